@@ -1,0 +1,2 @@
+// Package numeric holds the float64 algorithms.
+package numeric
