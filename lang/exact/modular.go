@@ -244,3 +244,26 @@ func (r *remaindering) lift() []big.Int {
 	}
 	return out
 }
+
+func (f residues) add(a, b uint64) uint64 {
+	if a += b; a >= f.p {
+		a -= f.p
+	}
+	return a
+}
+
+// dot gives Σ a[k]·b[k] with one division for every eight products.
+func (f residues) dot(a, b []uint64) uint64 {
+	var hi, lo, carry uint64
+	b = b[:len(a)]
+	for k, x := range a {
+		h, l := bits.Mul64(x, b[k])
+		lo, carry = bits.Add64(lo, l, 0)
+		hi += h + carry
+		if k&7 == 7 { // eight products of 124 bits stay below 2¹²⁷
+			hi %= f.p
+		}
+	}
+	_, r := bits.Div64(hi%f.p, lo, f.p)
+	return r
+}
