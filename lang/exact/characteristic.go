@@ -12,16 +12,27 @@ import (
 // Computational Algebraic Number Theory, 1993, algorithm 2.2.9) and put
 // together by Chinese remaindering up to a bound of Hadamard's kind, so the
 // result is proved; it is compared modulo a fresh prime all the same.
-func (m *Matrix) CharacteristicPolynomial() (Polynomial, error) {
+//
+// It panics for a matrix that is not square, and with ErrTooLarge where
+// [Matrix.CheckSize] says so.
+func (m *Matrix) CharacteristicPolynomial() Polynomial {
+	p, err := m.characteristic()
+	if err != nil {
+		panic(err)
+	}
+	return p
+}
+
+func (m *Matrix) characteristic() (Polynomial, error) {
 	if m.rows != m.cols {
 		return Polynomial{}, sizeError("the characteristic polynomial", m, nil)
+	}
+	if err := m.CheckSize(); err != nil {
+		return Polynomial{}, err
 	}
 	n := m.rows
 	ints, den := clearAll(m)
 	limit := min(minorBits(n, ints), minorBits(n, transposed(n, n, ints)))
-	if limit+n*den.BitLen() > LargestBits+64 {
-		return Polynomial{}, ErrTooLarge
-	}
 	sum := newRemaindering(n + 1)
 	index := 0
 	for ; sum.modulus.BitLen() <= limit+2; index++ {

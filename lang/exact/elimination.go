@@ -1,6 +1,9 @@
 package exact
 
-import "math/big"
+import (
+	"math/big"
+	mathbits "math/bits"
+)
 
 // fractionFree is the state of a Gauss–Jordan elimination over the integers
 // (E. H. Bareiss, Sylvester's identity and multistep integer-preserving
@@ -90,6 +93,9 @@ func (m *Matrix) Determinant() (*big.Rat, error) {
 	if m.rows != m.cols {
 		return nil, sizeError("the determinant", m, nil)
 	}
+	if err := m.CheckSize(); err != nil {
+		return nil, err
+	}
 	ints, den := clearRows(m)
 	product := big.NewInt(1)
 	for i := range den {
@@ -116,9 +122,40 @@ func (m *Matrix) Determinant() (*big.Rat, error) {
 	return fraction(&e.last, product), nil
 }
 
+// CheckSize returns ErrTooLarge when minors of m might need more than
+// LargestBits bits. The functions that return no error (Echelon, Kernel, Image,
+// CharacteristicPolynomial) panic with ErrTooLarge in that case, so a caller
+// with untrusted data asks here first.
+func (m *Matrix) CheckSize() error {
+	bits := 0
+	for _, x := range m.data {
+		bits = max(bits, x.Num().BitLen())
+	}
+	var den big.Int
+	order := min(m.rows, m.cols)
+	// After clearing denominators a minor of that order is at most ∏ √order·2^bits.
+	each := bits + mathbits.Len(uint(max(m.rows, m.cols)))/2 + 3
+	if !boundedDenominator(&den, m.data, LargestBits) || order*(each+2*den.BitLen()) > LargestBits {
+		return ErrTooLarge
+	}
+	return nil
+}
+
 // Echelon gives the reduced row echelon form (leading ones, zeros above and
-// below them) and the columns of its pivots; the rank is their number.
-func (m *Matrix) Echelon() (*Matrix, []int, error) {
+// below them) and the columns of its pivots; the rank is their number. It
+// panics with ErrTooLarge where [Matrix.CheckSize] says so.
+func (m *Matrix) Echelon() (*Matrix, []int) {
+	reduced, pivots, err := m.echelon()
+	if err != nil {
+		panic(err)
+	}
+	return reduced, pivots
+}
+
+func (m *Matrix) echelon() (*Matrix, []int, error) {
+	if err := m.CheckSize(); err != nil {
+		return nil, nil, err
+	}
 	ints, _ := clearRows(m)
 	if len(ints) > smallSize {
 		for attempt := range 3 {
@@ -128,10 +165,11 @@ func (m *Matrix) Echelon() (*Matrix, []int, error) {
 			}
 		}
 	}
-	return fractionFreeEchelon(m.rows, m.cols, ints)
+	out, pivots := fractionFreeEchelon(m.rows, m.cols, ints)
+	return out, pivots, nil
 }
 
-func fractionFreeEchelon(rows, cols int, ints []big.Int) (*Matrix, []int, error) {
+func fractionFreeEchelon(rows, cols int, ints []big.Int) (*Matrix, []int) {
 	e := eliminate(rows, cols, ints, cols)
 	out := NewMatrix(rows, cols)
 	for i := range e.pivots {
@@ -139,14 +177,26 @@ func fractionFreeEchelon(rows, cols int, ints []big.Int) (*Matrix, []int, error)
 			out.data[i*cols+j] = fraction(&ints[i*cols+j], &e.last)
 		}
 	}
-	return out, e.pivots, nil
+	return out, e.pivots
 }
 
 // Rank gives the rank, decided exactly: full rank modulo a prime is a proof;
-// a deficiency is proved over the rationals.
-func (m *Matrix) Rank() (int, error) {
+// a deficiency modulo two primes is proved over the rationals. It panics like
+// [Matrix.Echelon].
+func (m *Matrix) Rank() int {
+	rank, err := m.rank()
+	if err != nil {
+		panic(err)
+	}
+	return rank
+}
+
+func (m *Matrix) rank() (int, error) {
 	if m.cols > m.rows {
 		m = m.Transpose()
+	}
+	if err := m.CheckSize(); err != nil {
+		return 0, err
 	}
 	ints, _ := clearRows(m)
 	for index := range 2 {
@@ -155,7 +205,7 @@ func (m *Matrix) Rank() (int, error) {
 			return m.cols, nil
 		}
 	}
-	_, pivots, err := m.Echelon()
+	_, pivots, err := m.echelon()
 	return len(pivots), err
 }
 
@@ -170,24 +220,55 @@ func (m *Matrix) Inverse() (*Matrix, error) {
 // solveSquare gives x with m·x = b for a square matrix m, or ErrSingular.
 func (m *Matrix) solveSquare(b *Matrix) (*Matrix, error) {
 	n, k := m.rows, b.cols
-	// Columns of m and of b are cleared apart: (m·S)·(S⁻¹·x·T) = b·T with S, T diagonal.
-	matrix, matrixDen := clearRows(m.Transpose())
-	right, rightDen := clearRows(b.Transpose())
-	system := &squareSystem{n, k, transposed(n, n, matrix), transposed(k, n, right)}
+	if must(Augment(m, b)).CheckSize() != nil {
+		return nil, ErrTooLarge
+	}
+	system, matrixScale, rightScale := clearedSystem(m, b)
 	det, scaled, err := system.solve()
 	if err != nil {
 		return nil, err
 	}
 	x := NewMatrix(n, k)
-	var num, den big.Int
+	var den big.Int
 	for i := range n {
 		for j := range k {
 			if scaled[i*k+j].Sign() != 0 {
-				x.data[i*k+j] = fraction(num.Mul(&scaled[i*k+j], &matrixDen[i]), den.Mul(det, &rightDen[j]))
+				den.Mul(&matrixScale[i], &rightScale[j])
+				x.data[i*k+j] = fraction(&scaled[i*k+j], den.Mul(&den, det))
 			}
 		}
 	}
 	return x, nil
+}
+
+// clearedSystem scales the rows of m·x = b to integers and takes the common
+// factors out of m's columns: the unknowns of the system are
+// matrixScale[i]·x[i][j]·rightScale[j].
+func clearedSystem(m, b *Matrix) (system *squareSystem, matrixScale, rightScale []big.Int) {
+	n, k := m.rows, b.cols
+	matrix, rowScale := clearRows(m)
+	matrix = transposed(n, n, matrix)
+	matrixScale = make([]big.Int, n)
+	for j := range n {
+		column := matrix[j*n : (j+1)*n]
+		matrixScale[j].Set(content(column))
+		if matrixScale[j].Sign() == 0 {
+			matrixScale[j].SetInt64(1) // a zero column: found singular later
+		}
+		for i := range column {
+			column[i].Quo(&column[i], &matrixScale[j])
+		}
+	}
+	scaledRight := NewMatrix(k, n)
+	var factor big.Rat
+	for i := range n {
+		factor.SetInt(&rowScale[i])
+		for j := range k {
+			scaledRight.data[j*n+i] = ratProduct(b.data[i*k+j], &factor)
+		}
+	}
+	right, rightScale := clearRows(scaledRight)
+	return &squareSystem{n, k, transposed(n, n, matrix), transposed(k, n, right)}, matrixScale, rightScale
 }
 
 // transposed rearranges a row-major rows×cols array; numbers are shared.
@@ -239,7 +320,7 @@ func (m *Matrix) Solve(b *Matrix) (*Matrix, error) {
 			return x, err
 		}
 	}
-	reduced, pivots, err := must(Augment(m, b)).Echelon()
+	reduced, pivots, err := must(Augment(m, b)).echelon()
 	if err != nil {
 		return nil, err
 	}
@@ -257,13 +338,11 @@ func (m *Matrix) Solve(b *Matrix) (*Matrix, error) {
 	return x, nil
 }
 
-// Kernel gives a basis of {x : m·x = 0} as columns; cols×0 when m has full column rank.
-func (m *Matrix) Kernel() (*Matrix, error) {
-	reduced, pivots, err := m.Echelon()
-	if err != nil {
-		return nil, err
-	}
-	return kernelOf(reduced, pivots, m.cols), nil
+// Kernel gives a basis of {x : m·x = 0} as columns; cols×0 when m has full
+// column rank. It panics like [Matrix.Echelon].
+func (m *Matrix) Kernel() *Matrix {
+	reduced, pivots := m.Echelon()
+	return kernelOf(reduced, pivots, m.cols)
 }
 
 // kernelOf reads the kernel of the first cols columns off a reduced row echelon form.
@@ -281,11 +360,9 @@ func kernelOf(reduced *Matrix, pivots []int, cols int) *Matrix {
 	return kernel
 }
 
-// Image gives a basis of the column space: the first independent columns of m.
-func (m *Matrix) Image() (*Matrix, error) {
-	_, pivots, err := m.Echelon()
-	if err != nil {
-		return nil, err
-	}
-	return m.Columns(pivots...), nil
+// Image gives a basis of the column space: the first independent columns of
+// m. It panics like [Matrix.Echelon].
+func (m *Matrix) Image() *Matrix {
+	_, pivots := m.Echelon()
+	return m.Columns(pivots...)
 }

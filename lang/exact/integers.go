@@ -24,6 +24,13 @@ func clearAll(m *Matrix) (ints []big.Int, den *big.Int) {
 
 // commonDenominator sets den to the least common multiple of all denominators (1 for none).
 func commonDenominator(den *big.Int, entries []*big.Rat) {
+	boundedDenominator(den, entries, maxInt)
+}
+
+const maxInt = int(^uint(0) >> 1)
+
+// boundedDenominator gives up (false) when the multiple exceeds the bit length.
+func boundedDenominator(den *big.Int, entries []*big.Rat, bits int) bool {
 	den.SetInt64(1)
 	var quotient, remainder big.Int
 	for _, x := range entries {
@@ -37,8 +44,11 @@ func commonDenominator(den *big.Int, entries []*big.Rat) {
 			}
 		}
 		quotient.GCD(nil, nil, den, d)
-		den.Mul(den, remainder.Quo(d, &quotient))
+		if den.Mul(den, remainder.Quo(d, &quotient)); den.BitLen() > bits {
+			return false
+		}
 	}
+	return true
 }
 
 // scaleTo sets ints[k] = entries[k]·den, where den is a multiple of every denominator.

@@ -96,6 +96,9 @@ func (m *Matrix) Mul(b *Matrix) (*Matrix, error) {
 	if m.MaxBits()+b.MaxBits() > LargestBits {
 		return nil, ErrTooLarge
 	}
+	if !m.clearable() || !b.Transpose().clearable() {
+		return nil, ErrTooLarge
+	}
 	left, leftDen := clearRows(m)
 	right, rightDen := clearRows(b.Transpose())
 	out := NewMatrix(m.rows, b.cols)
@@ -114,6 +117,21 @@ func (m *Matrix) Mul(b *Matrix) (*Matrix, error) {
 		}
 	}
 	return out, nil
+}
+
+// clearable tells whether rows cleared of their denominators stay within
+// LargestBits; short entries need no look at their denominators.
+func (m *Matrix) clearable() bool {
+	if m.MaxBits()*m.cols <= LargestBits {
+		return true
+	}
+	var den big.Int
+	for i := range m.rows {
+		if !boundedDenominator(&den, m.data[i*m.cols:(i+1)*m.cols], LargestBits) {
+			return false
+		}
+	}
+	return true
 }
 
 // fraction copies num/den into a reduced rational.
