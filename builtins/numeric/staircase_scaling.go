@@ -32,7 +32,7 @@ const largestScaleExponent = 400
 // J. Langou, B. Lowery, arXiv:1401.5766, 2014), which keeps rounding noise in a
 // block that ought to vanish from being scaled up.
 func (s *stateSpace) balanced() systemScaling {
-	scale := systemScaling{states: ones(s.n), inputs: ones(s.m), outputs: ones(s.p)}
+	scale := systemScaling{states: unitScales(s.n), inputs: unitScales(s.m), outputs: unitScales(s.p)}
 	target := s.invariantSize()
 	for sweep := 0; sweep < scalingSweeps; sweep++ {
 		changed := false
@@ -134,7 +134,7 @@ func (scale systemScaling) spread() float64 {
 	return high / low
 }
 
-func ones(n int) []float64 {
+func unitScales(n int) []float64 {
 	v := make([]float64, n)
 	for i := range v {
 		v[i] = 1
@@ -184,8 +184,8 @@ func scaleColumn(m []float64, rows, columns, j int, f float64) {
 	}
 }
 
-// frobenius is the Frobenius norm of several blocks taken together.
-func frobenius(blocks ...[]float64) float64 {
+// blocksNorm is the Frobenius norm of several blocks taken together.
+func blocksNorm(blocks ...[]float64) float64 {
 	scale := 0.0
 	for _, block := range blocks {
 		for _, v := range block {
