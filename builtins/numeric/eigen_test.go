@@ -4,22 +4,21 @@ import (
 	"math"
 	"math/cmplx"
 	"math/rand"
-	"sort"
 	"testing"
 
 	"gonum.org/v1/gonum/mat"
 )
 
-// randomDense is an n×m matrix of independent normal numbers.
-func randomDense(r *rand.Rand, n, m int) *mat.Dense {
+// normalMatrix is an n×m matrix of independent normal numbers.
+func normalMatrix(r *rand.Rand, n, m int) *mat.Dense {
 	d := mat.NewDense(n, m, nil)
 	d.Apply(func(_, _ int, _ float64) float64 { return r.NormFloat64() }, d)
 	return d
 }
 
-// matchError pairs two sets of eigenvalues greedily and gives the largest
+// spectrumDistance pairs two sets of eigenvalues greedily and gives the largest
 // distance.
-func matchError(got, want []complex128) float64 {
+func spectrumDistance(got, want []complex128) float64 {
 	if len(got) != len(want) {
 		return math.Inf(1)
 	}
@@ -38,15 +37,11 @@ func matchError(got, want []complex128) float64 {
 	return worst
 }
 
-func sortByReal(w []complex128) {
-	sort.Slice(w, func(i, j int) bool { return real(w[i]) < real(w[j]) })
-}
-
 func TestSchurIdentity(t *testing.T) {
 	r := rand.New(rand.NewSource(1))
 	for _, n := range []int{1, 2, 3, 5, 12, 13, 40, 120} {
 		for _, size := range []float64{1, 1e-200, 1e250} {
-			a := randomDense(r, n, n)
+			a := normalMatrix(r, n, n)
 			a.Scale(size, a)
 			form, z, w, err := Schur(a)
 			if err != nil {
@@ -56,21 +51,21 @@ func TestSchurIdentity(t *testing.T) {
 			back.Mul(z, form)
 			back.Mul(&back, z.T())
 			back.Sub(&back, a)
-			if e := maxAbs(&back) / maxAbs(a); e > 1e-14*float64(n) {
+			if e := peakEntry(&back) / peakEntry(a); e > 1e-14*float64(n) {
 				t.Errorf("n %d size %g: residual %g", n, size, e)
 			}
 			values, err := Eigenvalues(a)
 			if err != nil {
 				t.Fatal(err)
 			}
-			if e := matchError(values, w) / maxAbs(a); e > 1e-12*float64(n) {
+			if e := spectrumDistance(values, w) / peakEntry(a); e > 1e-12*float64(n) {
 				t.Errorf("n %d size %g: eigenvalues differ by %g", n, size, e)
 			}
 		}
 	}
 }
 
-func maxAbs(m mat.Matrix) float64 {
+func peakEntry(m mat.Matrix) float64 {
 	rows, columns := sizeOf(m)
 	largest := 0.0
 	for i := 0; i < rows; i++ {
@@ -85,7 +80,7 @@ func TestReorderSchurKeepsTheMatrix(t *testing.T) {
 	r := rand.New(rand.NewSource(2))
 	for trial := 0; trial < 50; trial++ {
 		n := 1 + r.Intn(14)
-		a := randomDense(r, n, n)
+		a := normalMatrix(r, n, n)
 		form, z, w, err := Schur(a)
 		if err != nil {
 			t.Fatal(err)
@@ -110,8 +105,8 @@ func TestReorderSchurKeepsTheMatrix(t *testing.T) {
 		back.Mul(z, form)
 		back.Mul(&back, z.T())
 		back.Sub(&back, a)
-		if maxAbs(&back) > 1e-13 {
-			t.Errorf("residual %g", maxAbs(&back))
+		if peakEntry(&back) > 1e-13 {
+			t.Errorf("residual %g", peakEntry(&back))
 		}
 	}
 }
@@ -133,7 +128,7 @@ func TestEigenvaluesOfHardSmallMatrices(t *testing.T) {
 		if err != nil {
 			t.Fatal(name, err)
 		}
-		if e := matchError(got, c.want); e > 1e-14 {
+		if e := spectrumDistance(got, c.want); e > 1e-14 {
 			t.Errorf("%s: %v, want %v", name, got, c.want)
 		}
 	}
@@ -164,7 +159,7 @@ func TestEigenvectorsSatisfyTheirEquations(t *testing.T) {
 	r := rand.New(rand.NewSource(3))
 	for trial := 0; trial < 40; trial++ {
 		n := 1 + r.Intn(15)
-		a := randomDense(r, n, n)
+		a := normalMatrix(r, n, n)
 		if trial%4 == 0 {
 			a.Add(a, mat.DenseCopyOf(a.T()))
 		}

@@ -207,7 +207,7 @@ func singularValues(m *mat.Dense) ([]float64, error) {
 	work := mat.DenseCopyOf(m)
 	values := make([]float64, min(rows, columns))
 	query := make([]float64, 1)
-	kernels.Dgesvd(lapack.SVDNone, lapack.SVDNone, rows, columns, nil, columns, values, nil, 1, nil, 1, query, -1)
+	kernels.Dgesvd(lapack.SVDNone, lapack.SVDNone, rows, columns, work.RawMatrix().Data, columns, values, nil, 1, nil, 1, query, -1)
 	space := make([]float64, int(query[0]))
 	if !recovered(func() bool {
 		return kernels.Dgesvd(lapack.SVDNone, lapack.SVDNone, rows, columns, work.RawMatrix().Data, columns, values, nil, 1, nil, 1, space, len(space))

@@ -16,6 +16,9 @@ import (
 // routines on quasi-triangular matrices.
 var kernels lapackgonum.Implementation
 
+// products is the BLAS in use, for the same reason.
+var products = blas64.Implementation()
+
 // errNotConverged is what a failed QR iteration becomes.
 var errNotConverged = errors.New("the QR iteration for the eigenvalues did not converge")
 
@@ -236,5 +239,5 @@ func multiply(ta, tb blas.Transpose, m, n, k int, alpha float64, a []float64, ld
 	if m == 0 || n == 0 {
 		return
 	}
-	blas64.Implementation().Dgemm(ta, tb, m, n, k, alpha, a, lda, b, ldb, beta, c, ldc)
+	products.Dgemm(ta, tb, m, n, k, alpha, a, lda, b, ldb, beta, c, ldc)
 }
