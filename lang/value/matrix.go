@@ -16,6 +16,7 @@ type Matrix struct {
 	exactIm    *exact.Matrix // nil when real or floating
 	re, im     []float64     // row-major; of an exact matrix filled on first use of Floats
 	Err        float64       // absolute error estimate of the largest entry; 0 when exact
+	FromExact  bool          // floating only because exact numbers would have grown too large
 	Rows       []string
 	Columns    []string
 }
