@@ -55,19 +55,23 @@ func BassGura(a, b *Matrix, wanted Polynomial) (*Matrix, error) {
 		return nil, err
 	}
 	wanted = wanted.Monic()
-	open, err := a.characteristic()
-	if err != nil {
-		return nil, err
-	}
-	h, err := adjugateTimes(a, b, open)
+	h, err := adjugateTimes(a, b)
 	if err != nil {
 		return nil, err
 	}
 	n := a.rows
 	equations, right := NewMatrix(n, n), NewMatrix(n, 1)
-	for i, column := range h {
-		copy(equations.data[i*n:(i+1)*n], column.data)
-		right.data[i] = tidy(new(big.Rat).Sub(wanted.Coefficient(i), open.Coefficient(i)))
+	var factor big.Rat
+	for i, row := range h.coefficients {
+		common := content(row)
+		if common.Sign() == 0 {
+			return nil, unreachable(a, b, wanted)
+		}
+		for j := range row {
+			equations.data[i*n+j] = fraction(row[j].Quo(&row[j], common), intOne)
+		}
+		change := new(big.Rat).Sub(wanted.Coefficient(i), h.characteristic.Coefficient(i))
+		right.data[i] = ratProduct(change, factor.SetFrac(&h.den[i], common))
 	}
 	k, err := equations.solveSquare(right)
 	if err == ErrSingular {
@@ -111,14 +115,34 @@ func Ackermann(a, b *Matrix, wanted Polynomial) (*Matrix, error) {
 	if err != nil {
 		return nil, err
 	}
-	k := NewMatrix(1, n)
-	for i := n; i >= 0; i-- {
-		if k, err = k.Mul(a); err != nil {
-			return nil, err
+	return rowTimesPolynomial(q, wanted, a), nil
+}
+
+// rowTimesPolynomial gives q·p(a) by Horner's scheme over the integers.
+func rowTimesPolynomial(q *Matrix, p Polynomial, a *Matrix) *Matrix {
+	n := a.rows
+	ints, den := clearAll(a)
+	row, rowDen := clearAll(q)
+	weights, weightDen := p.integral()
+	sum := make([]big.Int, n)
+	power := big.NewInt(1) // den^(degree−i)
+	var weight, term big.Int
+	for i := p.Degree(); i >= 0; i-- {
+		sum = multiplyIntegers(1, n, n, sum, ints)
+		weight.Mul(&weights[i], power)
+		for j := range sum {
+			sum[j].Add(&sum[j], term.Mul(&weight, &row[j]))
 		}
-		k = must(k.Add(q.Scale(wanted.Coefficient(i))))
+		if i > 0 {
+			power.Mul(power, den)
+		}
 	}
-	return k, nil
+	power.Mul(power.Mul(power, rowDen), weightDen)
+	out := NewMatrix(1, n)
+	for j := range sum {
+		out.data[j] = fraction(&sum[j], power)
+	}
+	return out
 }
 
 // lastRow gives the last row of the inverse reachability matrix of a pair with
@@ -219,13 +243,13 @@ func ControllerForm(a, b *Matrix) (*Form, error) {
 		copy(t.data[i*n:(i+1)*n], row.data)
 	}
 	// The columns of T⁻¹ are the coefficients of adj(s·I − a)·b.
-	h, err := adjugateTimes(a, b, p)
+	h, err := adjugateTimes(a, b)
 	if err != nil {
 		return nil, err
 	}
-	for k, column := range h {
+	for k, column := range h.coefficients {
 		for i := range n {
-			inverse.data[i*n+k] = column.data[i]
+			inverse.data[i*n+k] = fraction(&column[i], &h.den[k])
 		}
 	}
 	return &Form{t, inverse, companion(p), Identity(n).Columns(n - 1)}, nil

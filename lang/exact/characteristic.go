@@ -24,11 +24,39 @@ func (m *Matrix) CharacteristicPolynomial() Polynomial {
 }
 
 func (m *Matrix) characteristic() (Polynomial, error) {
+	c, err := m.clearedCharacteristic()
+	if err != nil {
+		return Polynomial{}, err
+	}
+	return c.polynomial(), nil
+}
+
+// clearedCharacteristic is the characteristic polynomial of the integer matrix
+// ints = den·m, lowest power first.
+type clearedCharacteristic struct {
+	ints, coefficients []big.Int
+	den                *big.Int
+}
+
+// polynomial gives that of m: det(s·I − N/d) = d⁻ⁿ·χ_N(d·s), so the coefficient
+// of sᵏ is divided by d^(n−k).
+func (c *clearedCharacteristic) polynomial() Polynomial {
+	n := len(c.coefficients) - 1
+	out := make([]*big.Rat, n+1)
+	power := big.NewInt(1)
+	for k := n; k >= 0; k-- {
+		out[k] = fraction(&c.coefficients[k], power)
+		power.Mul(power, c.den)
+	}
+	return trimmed(out)
+}
+
+func (m *Matrix) clearedCharacteristic() (*clearedCharacteristic, error) {
 	if m.rows != m.cols {
-		return Polynomial{}, sizeError("the characteristic polynomial", m, nil)
+		return nil, sizeError("the characteristic polynomial", m, nil)
 	}
 	if err := m.CheckSize(); err != nil {
-		return Polynomial{}, err
+		return nil, err
 	}
 	n := m.rows
 	ints, den := clearAll(m)
@@ -43,17 +71,10 @@ func (m *Matrix) characteristic() (Polynomial, error) {
 	fresh := primeField(index)
 	for k, want := range fresh.characteristic(fresh.reduceRows(n, n, ints)) {
 		if fresh.reduce(&lifted[k]) != want {
-			return Polynomial{}, errors.New("the characteristic polynomial failed its check modulo a further prime")
+			return nil, errors.New("the characteristic polynomial failed its check modulo a further prime")
 		}
 	}
-	// det(s·I − N/d) = d⁻ⁿ·χ_N(d·s): the coefficient of sᵏ is divided by d^(n−k).
-	c := make([]*big.Rat, n+1)
-	power := big.NewInt(1)
-	for k := n; k >= 0; k-- {
-		c[k] = fraction(&lifted[k], power)
-		power.Mul(power, den)
-	}
-	return trimmed(c), nil
+	return &clearedCharacteristic{ints, lifted, den}, nil
 }
 
 // minorBits bounds the bit length of every coefficient: a sum of principal

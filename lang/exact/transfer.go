@@ -7,47 +7,79 @@ import "math/big"
 // coefficients of the adjugate follow Faddeev's recursion (D. K. Faddeev and
 // V. N. Faddeeva 1963) with the characteristic polynomial known beforehand.
 func Resolvent(a *Matrix) (numerators [][]Polynomial, denominator Polynomial, err error) {
-	denominator, err = a.characteristic()
+	adj, err := adjugateTimes(a, Identity(a.rows))
 	if err != nil {
 		return nil, Polynomial{}, err
 	}
-	columns, err := adjugateTimes(a, Identity(a.rows), denominator)
-	if err != nil {
-		return nil, Polynomial{}, err
+	numerators = make([][]Polynomial, a.rows)
+	for i := range numerators {
+		numerators[i] = make([]Polynomial, a.rows)
+		for j := range numerators[i] {
+			c := make([]*big.Rat, a.rows)
+			for k := range c {
+				c[k] = fraction(&adj.coefficients[k][i*a.rows+j], &adj.den[k])
+			}
+			numerators[i][j] = trimmed(c)
+		}
 	}
-	return assemble(columns, a.rows, a.rows), denominator, nil
+	return numerators, adj.characteristic, nil
 }
 
-// adjugateTimes gives the coefficient matrices, lowest power first, of
-// adj(s·I − a)·b: H[n−1] = b, H[k−1] = a·H[k] + c[k]·b.
-func adjugateTimes(a, b *Matrix, characteristic Polynomial) ([]*Matrix, error) {
-	n := a.rows
-	coefficients := make([]*Matrix, n)
+// adjugate holds adj(s·I − a)·b = Σ sᵏ·coefficients[k]/den[k], each coefficient
+// an integer matrix of b's size.
+type adjugate struct {
+	coefficients   [][]big.Int
+	den            []big.Int
+	characteristic Polynomial
+}
+
+// adjugateTimes works the recursion h[n−1] = b, h[k−1] = a·h[k] + c[k]·b over the
+// integers: with a = N/d and b = G/e the integers are e·d^(n−1−k)·h[k].
+func adjugateTimes(a, b *Matrix) (*adjugate, error) {
+	open, err := a.clearedCharacteristic()
+	if err != nil {
+		return nil, err
+	}
+	if !b.clearable() {
+		return nil, ErrTooLarge
+	}
+	n, m := a.rows, b.cols
+	drive, driveDen := clearAll(b)
+	out := &adjugate{make([][]big.Int, n), make([]big.Int, n), open.polynomial()}
+	var term big.Int
 	for k := n - 1; k >= 0; k-- {
 		if k == n-1 {
-			coefficients[k] = b
+			out.coefficients[k] = drive
+			out.den[k].Set(driveDen)
 			continue
 		}
-		next, err := a.Mul(coefficients[k+1])
-		if err != nil {
-			return nil, err
+		next := multiplyIntegers(n, n, m, open.ints, out.coefficients[k+1])
+		for i := range next {
+			if drive[i].Sign() != 0 {
+				next[i].Add(&next[i], term.Mul(&open.coefficients[k+1], &drive[i]))
+			}
 		}
-		coefficients[k] = must(next.Add(b.Scale(characteristic.Coefficient(k + 1))))
+		out.coefficients[k] = next
+		out.den[k].Mul(&out.den[k+1], open.den)
 	}
-	return coefficients, nil
+	return out, nil
 }
 
-// assemble turns coefficient matrices, lowest power first, into a matrix of polynomials.
-func assemble(coefficients []*Matrix, rows, cols int) [][]Polynomial {
-	out := make([][]Polynomial, rows)
-	for i := range out {
-		out[i] = make([]Polynomial, cols)
-		for j := range out[i] {
-			c := make([]*big.Rat, len(coefficients))
-			for k, m := range coefficients {
-				c[k] = m.At(i, j)
+// multiplyIntegers gives the product of an r×n and an n×c integer matrix.
+func multiplyIntegers(r, n, c int, x, y []big.Int) []big.Int {
+	out := make([]big.Int, r*c)
+	var term big.Int
+	for i := range r {
+		for k := range n {
+			factor := &x[i*n+k]
+			if factor.Sign() == 0 {
+				continue
 			}
-			out[i][j] = trimmed(c)
+			for j := range c {
+				if y[k*c+j].Sign() != 0 {
+					out[i*c+j].Add(&out[i*c+j], term.Mul(factor, &y[k*c+j]))
+				}
+			}
 		}
 	}
 	return out
@@ -76,20 +108,31 @@ func Numerators(a, b, c, d *Matrix) (numerators [][]Polynomial, denominator Poly
 	if err = checkPlant(a, b, c, d); err != nil {
 		return nil, Polynomial{}, err
 	}
-	if denominator, err = a.characteristic(); err != nil {
-		return nil, Polynomial{}, err
-	}
-	states, err := adjugateTimes(a, b, denominator)
+	adj, err := adjugateTimes(a, b)
 	if err != nil {
 		return nil, Polynomial{}, err
 	}
-	outputs := make([]*Matrix, len(states))
-	for k, h := range states {
-		if outputs[k], err = c.Mul(h); err != nil {
-			return nil, Polynomial{}, err
+	if !c.clearable() {
+		return nil, Polynomial{}, ErrTooLarge
+	}
+	out, outDen := clearRows(c)
+	products := make([][]big.Int, a.rows)
+	for k := range products {
+		products[k] = multiplyIntegers(c.rows, a.rows, b.cols, out, adj.coefficients[k])
+	}
+	var den big.Int
+	numerators = make([][]Polynomial, c.rows)
+	for i := range numerators {
+		numerators[i] = make([]Polynomial, b.cols)
+		for j := range numerators[i] {
+			entry := make([]*big.Rat, a.rows)
+			for k := range entry {
+				entry[k] = fraction(&products[k][i*b.cols+j], den.Mul(&adj.den[k], &outDen[i]))
+			}
+			numerators[i][j] = trimmed(entry)
 		}
 	}
-	numerators = assemble(outputs, c.rows, b.cols)
+	denominator = adj.characteristic
 	for i := range numerators {
 		for j := range numerators[i] {
 			if x := d.At(i, j); x.Sign() != 0 {
