@@ -1,0 +1,42 @@
+package main
+
+import (
+	"os"
+
+	"gainwright/lang/diag"
+	"gainwright/lang/prompt"
+	"gainwright/lang/render"
+)
+
+// prompt is gainwright without a file.
+func (a *app) prompt() error {
+	root, err := os.OpenRoot(".")
+	if err != nil {
+		return diag.New(diag.File, "the current folder cannot be read: %s", reason(err))
+	}
+	defer root.Close()
+	progress := newProgress(a.errOut)
+	w := newWords()
+	in, inIsTerminal := terminalOf(a.in)
+	_, outIsTerminal := terminalOf(a.out)
+	status := prompt.Run(prompt.Options{
+		Session:  a.session(root, progress, true),
+		Table:    w.table,
+		Root:     root,
+		In:       a.in,
+		Out:      a.out,
+		Terminal: in == os.Stdin && inIsTerminal && outIsTerminal,
+		Look:     func() render.Options { return a.look(a.out) },
+		Greeting: greeting(),
+		Quiet:    progress.clear,
+	})
+	a.worsen(status)
+	return nil
+}
+
+func greeting() []string {
+	return []string{
+		"gainwright, state-space design. Tab completes a word, explain WORD explains it.",
+		"Ctrl-C stops a running statement; leave session, or Ctrl-D, leaves.",
+	}
+}

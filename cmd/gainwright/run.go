@@ -1,0 +1,122 @@
+package main
+
+import (
+	"bufio"
+	"context"
+	"os"
+	"os/signal"
+
+	"github.com/spf13/cobra"
+
+	"gainwright/builtins"
+	"gainwright/lang/diag"
+	"gainwright/lang/eval"
+	"gainwright/lang/render"
+	"gainwright/stdlib"
+)
+
+// runRoot is gainwright without a subcommand: the prompt, or a file to run.
+func (a *app) runRoot(_ *cobra.Command, args []string) error {
+	if err := a.checkFlags(); err != nil {
+		return err
+	}
+	switch len(args) {
+	case 0:
+		if a.json {
+			return usage("gainwright --json FILE runs a file, - for standard input", "--json needs a file")
+		}
+		return a.prompt()
+	case 1:
+		return a.runFile(args[0])
+	}
+	if _, err := os.Stat(args[0]); err != nil {
+		return usage("gainwright --help lists the commands", "%s is neither a command nor a file", args[0])
+	}
+	return usage("gainwright check FILE… checks several", "one file is run at a time, %d were named", len(args))
+}
+
+func (a *app) runFile(name string) error {
+	d, failure := a.open(name)
+	if failure != nil {
+		return failure
+	}
+	return a.runDesign(d, false)
+}
+
+// runDesign runs a design and sets the exit status. With onlyVerdicts it shows
+// requirements, claims and errors alone.
+func (a *app) runDesign(d *design, onlyVerdicts bool) error {
+	root, err := os.OpenRoot(d.folder)
+	if err != nil {
+		return unreadable(d.folder, err)
+	}
+	defer root.Close()
+	progress := newProgress(a.errOut)
+	session := a.session(root, progress, false)
+
+	out := bufio.NewWriterSize(a.out, 64<<10)
+	defer out.Flush()
+	emit := a.emitter(d.source, out, progress, onlyVerdicts)
+	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt)
+	defer stop()
+	// A second interruption ends the program at once.
+	context.AfterFunc(ctx, stop)
+	outcome := session.RunText(ctx, d.source, emit)
+	progress.clear()
+	a.worsen(statusOf(outcome))
+	return nil
+}
+
+func (a *app) session(root *os.Root, progress *progress, interactive bool) *eval.Session {
+	return eval.New(eval.Options{
+		Builtins:    builtins.Table(),
+		Library:     stdlib.Files,
+		Root:        root,
+		Interactive: interactive,
+		Limits:      eval.Limits{Time: a.timeLimit},
+		Progress:    progress.report,
+	})
+}
+
+// emitter writes events: values and verdicts on standard output, errors in text on
+// standard error.
+func (a *app) emitter(main *diag.Source, out *bufio.Writer, progress *progress, onlyVerdicts bool) func(eval.Event) {
+	if a.json {
+		return func(e eval.Event) {
+			progress.clear()
+			if onlyVerdicts && (e.Shown != nil || e.Note != "") {
+				return
+			}
+			if line := render.JSON(e, main); line != nil {
+				out.Write(line)
+				out.Flush()
+			}
+		}
+	}
+	values := render.Printer{Out: out, Options: a.look(a.out), OnlyVerdicts: onlyVerdicts}
+	errors := render.Printer{Out: a.errOut, Options: a.look(a.errOut)}
+	return func(e eval.Event) {
+		progress.clear()
+		if e.Error != nil {
+			out.Flush()
+			errors.Event(e)
+			return
+		}
+		values.Event(e)
+		// What is shown stands on the screen before a long statement begins.
+		out.Flush()
+	}
+}
+
+func statusOf(o eval.Outcome) int {
+	switch {
+	case o.Failed:
+		return statusError
+	case o.Missed:
+		return statusMissed
+	}
+	return statusMet
+}
+
+// worsen keeps the worst status of several files.
+func (a *app) worsen(status int) { a.status = max(a.status, status) }
