@@ -27,6 +27,7 @@ func (e entry) sign() sign {
 
 // entryOf cuts a number or a complex number for a column.
 func entryOf(v value.Value, o Options) entry {
+	v = force(v)
 	switch x := v.(type) {
 	case value.Number:
 		e := entry{re: figureOf(x, o)}

@@ -21,7 +21,7 @@ type figure struct {
 }
 
 // largest exact whole numbers that are printed in full
-const wholeDigits = 15
+const longestWhole = 15
 
 // a fraction is short when its denominator has at most two digits and its numerator at most four
 const (
@@ -44,7 +44,7 @@ func exactFigure(r *big.Rat, digits int) figure {
 	f := figure{negative: r.Sign() < 0}
 	if r.IsInt() {
 		text := strings.TrimPrefix(r.Num().String(), "-")
-		if len(text) <= max(wholeDigits, digits) {
+		if len(text) <= max(longestWhole, digits) {
 			f.exponent = len(text) - 1
 			f.digits = strings.TrimRight(text, "0")
 			return f
@@ -135,8 +135,11 @@ func holding(x, err float64) int {
 	if err == 0 {
 		return 17
 	}
-	return int(math.Floor(-math.Log10(err / math.Abs(x))))
+	return wholeDigits(-math.Log10(err / math.Abs(x)))
 }
+
+// wholeDigits counts whole digits; what the logarithm's rounding left is not lost.
+func wholeDigits(digits float64) int { return int(math.Floor(digits + 1e-9)) }
 
 func trimZeros(digits string) string {
 	t := strings.TrimRight(digits, "0")
@@ -171,7 +174,7 @@ func (f figure) wantsScientific() bool {
 		return false
 	}
 	if f.sign == exactly { // a large whole number: in full unless it is mostly zeros
-		return len(f.digits) <= 5 || f.exponent > wholeDigits
+		return len(f.digits) <= 5 || f.exponent > longestWhole
 	}
 	return f.exponent >= len(f.digits)
 }

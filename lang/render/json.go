@@ -6,7 +6,6 @@ import (
 	"math"
 	"math/big"
 	"path/filepath"
-	"strings"
 
 	"gainwright/lang/diag"
 	"gainwright/lang/eval"
@@ -120,7 +119,7 @@ func shownJSON(s *eval.Shown) any {
 
 func requirementOf(e eval.Event) *requirementJSON {
 	r := e.Requirement
-	out := &requirementJSON{Source: requirementSource(e), Met: r.Met, WithinRounding: r.WithinRounding,
+	out := &requirementJSON{Source: e.Text, Met: r.Met, WithinRounding: r.WithinRounding,
 		NotJudged: r.NotJudged, Operator: r.Op, Because: r.Because, Why: r.Why}
 	if r.Left != nil {
 		out.Left = plainJSON(r.Left)
@@ -129,15 +128,6 @@ func requirementOf(e eval.Event) *requirementJSON {
 		out.Right = plainJSON(r.Right)
 	}
 	return out
-}
-
-// requirementSource is the condition without the word and the reason.
-func requirementSource(e eval.Event) string {
-	source := strippedWord(e.Text, "require")
-	if why := e.Requirement.Why; why != "" {
-		source = strings.TrimSpace(strings.TrimSuffix(strings.TrimSpace(strings.TrimSuffix(source, quoted(why))), ","))
-	}
-	return source
 }
 
 // plainJSON is a bare number where the value is a real number or a quantity, else the value.
@@ -153,7 +143,7 @@ func plainJSON(v value.Value) any {
 
 func claimOf(e eval.Event) *claimJSON {
 	c := e.Claim
-	out := &claimJSON{Source: strippedWord(e.Text, "claim"), Agrees: c.Agrees, Undecided: c.Undecided,
+	out := &claimJSON{Source: e.Text, Agrees: c.Agrees, Undecided: c.Undecided,
 		WorstUnits: floatJSON(c.WorstUnits), Entries: []entryJSON{}, Notes: c.Notes}
 	for _, entry := range c.Entries {
 		at := entry.At

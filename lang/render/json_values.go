@@ -37,7 +37,7 @@ type matrixJSON struct {
 	Size           []int      `json:"size"`
 	Real           [][]any    `json:"real"`
 	Imaginary      [][]any    `json:"imaginary,omitempty"`
-	Exact          [][]string `json:"exact,omitempty"`
+	Exact          any        `json:"exact,omitempty"`
 	ExactImaginary [][]string `json:"exact_imaginary,omitempty"`
 	Rows           []string   `json:"rows,omitempty"`
 	Columns        []string   `json:"columns,omitempty"`
@@ -155,7 +155,7 @@ func orderedOrNil(fields []value.Named) *ordered {
 
 // valueJSON builds the object of a value.
 func valueJSON(v value.Value) any {
-	switch x := v.(type) {
+	switch x := force(v).(type) {
 	case nil:
 		return nil
 	case value.Number:
@@ -214,7 +214,7 @@ func digitsOf(r *big.Rat, digits float64) *int {
 	if r != nil || math.IsInf(digits, 0) || math.IsNaN(digits) {
 		return nil
 	}
-	n := max(0, int(math.Floor(digits)))
+	n := max(0, wholeDigits(digits))
 	return &n
 }
 

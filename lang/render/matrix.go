@@ -2,7 +2,6 @@ package render
 
 import (
 	"fmt"
-	"math"
 
 	"gainwright/lang/value"
 )
@@ -31,7 +30,7 @@ func layNamedMatrix(m *value.Matrix, rowNames, columnNames []string, o Options) 
 		l.sign = l.sign.both(signOf(column))
 	}
 	if !m.IsExact() {
-		l.remarks = digitRemark(int(math.Floor(m.Digits())), o)
+		l.remarks = digitRemark(wholeDigits(m.Digits()), o)
 	}
 	abridgedRows, abridgedColumns := len(rowIndex) < rows, len(columnIndex) < cols
 	if abridgedRows || abridgedColumns {

@@ -100,17 +100,20 @@ func (p *Printer) requirement(e eval.Event, r *eval.Requirement) []string {
 	case !r.Met:
 		word, c = "missed", red
 	}
-	source := strippedWord(e.Text, "require")
-	if r.Why != "" {
-		source = strings.TrimSpace(strings.TrimSuffix(strings.TrimSpace(strings.TrimSuffix(source, quoted(r.Why))), ","))
-	}
+	source := e.Text
 	lines := p.verdict(word, firstOf(r.Why, source), c)
 	var below []string
-	if r.Why != "" {
-		below = append(below, source)
-	}
+	sides := ""
 	if r.Op != "" && r.Left != nil && r.Right != nil {
-		below = append(below, p.sides(r))
+		sides = p.sides(r)
+	}
+	switch {
+	case r.Why != "" && sides != "":
+		below = append(below, source+": "+sides)
+	case r.Why != "":
+		below = append(below, source)
+	case sides != "" && sides != source:
+		below = append(below, sides)
 	}
 	if r.WithinRounding {
 		below = append(below, "within rounding: the bound lies inside the value's own uncertainty")
@@ -133,18 +136,11 @@ func firstOf(texts ...string) string {
 	return ""
 }
 
-func strippedWord(text, word string) string {
-	if rest, ok := strings.CutPrefix(text, word+" "); ok {
-		return strings.TrimSpace(rest)
-	}
-	return text
-}
-
 // sides shows both sides of a comparison with so many digits that they differ.
 func (p *Printer) sides(r *eval.Requirement) string {
 	o := p.Options
 	left, right := Inline(r.Left, o), Inline(r.Right, o)
-	for d := o.digits() + 1; left == right && !r.Met && d <= 17; d++ {
+	for d := o.digits() + 1; unpadded(left) == unpadded(right) && !r.Met && d <= 17; d++ {
 		o.Digits = d
 		left, right = Inline(r.Left, o), Inline(r.Right, o)
 	}
@@ -152,6 +148,14 @@ func (p *Printer) sides(r *eval.Requirement) string {
 		return left + " " + r.Op + " " + right
 	}
 	return left + " is not " + r.Op + " " + right
+}
+
+// unpadded is a number's text without the zeros that only say how many digits hold.
+func unpadded(text string) string {
+	if strings.ContainsAny(text, "e ") || !strings.Contains(text, ".") {
+		return text
+	}
+	return strings.TrimSuffix(strings.TrimRight(text, "0"), ".")
 }
 
 func (p *Printer) claim(e eval.Event, c *eval.Claim) []string {
@@ -162,7 +166,7 @@ func (p *Printer) claim(e eval.Event, c *eval.Claim) []string {
 	case !c.Agrees:
 		word, tint = "disagrees", red
 	}
-	lines := p.verdict(word, strippedWord(e.Text, "claim"), tint)
+	lines := p.verdict(word, e.Text, tint)
 	for _, entry := range c.Entries {
 		lines = append(lines, p.under(claimEntry(entry))...)
 	}
@@ -212,7 +216,7 @@ func claimEntry(e eval.ClaimEntry) string {
 	if math.IsInf(e.Units, 0) {
 		return text + "; equality was printed"
 	}
-	return text + fmt.Sprintf("; %.3g units of its last place apart", e.Units)
+	return text + fmt.Sprintf("; off by %.3g units of its last place", e.Units)
 }
 
 // claimDigits shows two digits more of the computed value than were printed.

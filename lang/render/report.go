@@ -1,7 +1,9 @@
 package render
 
 import (
+	"fmt"
 	"strconv"
+	"strings"
 
 	"gainwright/lang/value"
 )
@@ -12,7 +14,11 @@ func layReport(r *value.Report, o Options) laid {
 	if r.Holds != nil {
 		l.word = strconv.FormatBool(*r.Holds)
 	}
-	l.lines = append(l.lines, layNamed(r.Fields, o.narrower(2))...)
+	small, large := bySize(r.Fields, len(r.Columns) > 0, o)
+	l.lines = append(l.lines, layNamed(small, o.narrower(2))...)
+	if len(large) > 0 {
+		l.lines = append(l.lines, hanging("further  ", strings.Join(large, ", "), o.width()-2)...)
+	}
 	if len(r.Columns) > 0 {
 		if len(l.lines) > 0 {
 			l.lines = append(l.lines, "")
@@ -22,6 +28,29 @@ func layReport(r *value.Report, o Options) laid {
 		l.lines = append(l.lines, t.lines(o.width()-2)...)
 	}
 	return l
+}
+
+// bySize parts the fields of a report: those that take lines of their own are only named,
+// with their size, unless there is nothing else to show.
+func bySize(fields []value.Named, hasTable bool, o Options) (small []value.Named, large []string) {
+	for _, f := range fields {
+		f.Value = force(f.Value)
+		_, _, short := nested(f.Value, o)
+		if short || !isLarge(f.Value) {
+			small = append(small, f)
+			continue
+		}
+		size := ""
+		if m, ok := f.Value.(*value.Matrix); ok {
+			r, c := m.Dims()
+			size = fmt.Sprintf(" (%d × %d)", r, c)
+		}
+		large = append(large, "."+f.Name+size)
+	}
+	if len(small) == 0 && !hasTable || o.InFull {
+		return fields, nil
+	}
+	return small, large
 }
 
 // layFields lays out any other value with fields.
@@ -52,6 +81,7 @@ func layNamed(fields []value.Named, o Options) []string {
 	}
 	var lines []string
 	for _, f := range fields {
+		f.Value = force(f.Value)
 		if text, ok := f.Value.(value.Text); ok {
 			lines = append(lines, hanging(padRight(f.Name, w)+"   ", oneLine(string(text)), o.width())...)
 			continue
@@ -72,7 +102,7 @@ func layNamed(fields []value.Named, o Options) []string {
 
 // nested writes a small report inside another on one line.
 func nested(v value.Value, o Options) (string, sign, bool) {
-	r, ok := v.(*value.Report)
+	r, ok := force(v).(*value.Report)
 	if !ok || len(r.Columns) > 0 || len(r.Notes) > 0 || r.Holds != nil {
 		return "", unsigned, false
 	}

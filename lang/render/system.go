@@ -51,7 +51,7 @@ func layPlant(p *value.Plant, o Options) laid {
 	l.lines, l.sign = systemArray(p, o)
 	for _, m := range []*value.Matrix{p.A, p.B, p.C, p.D} {
 		if r, c := m.Dims(); !m.IsExact() && r*c > 0 && largestOf(m) > 0 {
-			l.remarks = digitRemark(int(math.Floor(m.Digits())), o)
+			l.remarks = digitRemark(wholeDigits(m.Digits()), o)
 			if l.remarks != nil {
 				break
 			}

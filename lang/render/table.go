@@ -55,17 +55,18 @@ func tableEntry(row []value.Value, j int, o Options) entry {
 	if j >= len(row) || row[j] == nil {
 		return entry{isText: true}
 	}
-	if text, ok := row[j].(value.Text); ok {
+	cell := force(row[j])
+	if text, ok := cell.(value.Text); ok {
 		return entry{isText: true, text: oneLine(string(text))}
 	}
-	if b, ok := row[j].(value.Boolean); ok {
+	if b, ok := cell.(value.Boolean); ok {
 		word := "no"
 		if b {
 			word = "yes"
 		}
 		return entry{isText: true, text: word}
 	}
-	return entryOf(row[j], o)
+	return entryOf(cell, o)
 }
 
 func tableSign(rows [][]value.Value, j int, o Options) sign {

@@ -8,8 +8,17 @@ import (
 	"gainwright/lang/value"
 )
 
+// force works a deferred value out; nil stays nil.
+func force(v value.Value) value.Value {
+	if v == nil {
+		return nil
+	}
+	return value.Force(v)
+}
+
 // layValue lays any value out.
 func layValue(v value.Value, in *value.Unit, o Options) laid {
+	v = force(v)
 	if in != nil {
 		// What cannot be shown in the unit was refused when it was evaluated.
 		if converted, err := value.In(v, *in); err == nil {
@@ -60,7 +69,7 @@ func quoted(s string) string {
 
 // inlineValue is a value on one line, with the sign it would need.
 func inlineValue(v value.Value, o Options) (string, sign) {
-	switch x := v.(type) {
+	switch x := force(v).(type) {
 	case nil:
 		return "", unsigned
 	case value.Number, value.Quantity, value.Complex, value.Text, value.Boolean, *value.Polynomial, *value.Function:
@@ -100,8 +109,12 @@ func shortFields(fields []value.Named, o Options) (string, sign, bool) {
 	parts := make([]string, 0, len(fields))
 	s := unsigned
 	for _, f := range fields {
-		switch f.Value.(type) {
+		switch x := force(f.Value).(type) {
 		case value.Number, value.Quantity, value.Complex, value.Text, value.Boolean:
+		case *value.List:
+			if isLarge(x) || len(x.Items) > 8 {
+				return "", unsigned, false
+			}
 		default:
 			return "", unsigned, false
 		}
@@ -184,7 +197,7 @@ func listParts(l *value.List, o Options) ([]string, sign) {
 
 // isLarge tells whether a value needs lines of its own.
 func isLarge(v value.Value) bool {
-	switch x := v.(type) {
+	switch x := force(v).(type) {
 	case *value.Matrix, *value.Gain, *value.Plant, *value.Report, *value.Model:
 		return true
 	case *value.Transfer:
