@@ -105,7 +105,13 @@ func rootOfLarge(x *big.Rat) (Number, bool) {
 }
 
 func realRoot(n Number) (Number, error) {
-	return floatFunction(n, math.Sqrt, func(x float64) float64 { return 0.5 / math.Sqrt(x) })
+	x, ex := n.approx()
+	root := math.Sqrt(x)
+	err := math.Sqrt(ex) // where the argument may be zero
+	if x > 0 {
+		err = math.Min(err, 0.5*ex/root)
+	}
+	return settle(root, err, n)
 }
 
 // Exp gives eˣ; exp(0) is exact.

@@ -94,7 +94,7 @@ func addAsMatrices(a, b Value) (Value, error) {
 		if isScalar(a) {
 			other = y
 		}
-		e := diag.New(diag.Shape, "a number and a matrix of size %s are not added", sizeText(other.rows, other.cols))
+		e := diag.New(diag.Shape, "%s and %s are not added: one has a single entry, the other is %s", Describe(a), Describe(b), sizeText(other.rows, other.cols))
 		if other.rows == other.cols {
 			return nil, e.WithHelp("c*identity(%d) adds to the diagonal, filled(c, rows: %d, columns: %d) to every entry", other.rows, other.rows, other.cols)
 		}
@@ -148,8 +148,7 @@ func divideAsMatrices(a, b Value) (Value, error) {
 			return nil, err
 		}
 		if y.rows != 1 || y.cols != 1 {
-			return nil, diag.New(diag.Type, "division by a matrix of size %s is not defined (the left side is %s)", sizeText(y.rows, y.cols), Describe(a)).
-				WithHelp("write A * B^-1, or solve(B, A) for B^-1 * A")
+			return nil, matrixDivisor(a, b)
 		}
 		b = y.At(0, 0)
 	}
@@ -161,6 +160,11 @@ func divideAsMatrices(a, b Value) (Value, error) {
 		return nil, err
 	}
 	return multiplyAsMatrices(a, inverse)
+}
+
+// matrixDivisor is the error of a division by a matrix.
+func matrixDivisor(a, b Value) error {
+	return undefined("division", a, b).(*diag.Error).WithHelp("write A * B^-1, or solve(B, A) for B^-1 * A")
 }
 
 func powerAsMatrix(a, b Value) (Value, error) {

@@ -52,13 +52,18 @@ func unitName(u Unit) string {
 }
 
 func unitClash(what string, a, b Unit) error {
-	e := diag.New(diag.Unit, "%s: the left side is in %s, the right side in %s", what, unitName(a), unitName(b))
-	if a.Text == "" && a.Dim.IsPlain() || b.Text == "" && b.Dim.IsPlain() {
-		e.Message = what + ": one side is in " + unitName(a) + ", the other in " + unitName(b)
-		if a.Text == "" && a.Dim.IsPlain() {
-			return e.WithHelp("the number on the left needs a unit of the same kind as %s", unitName(b))
+	side := func(u Unit) string {
+		if u.Text == "" && u.Dim.IsPlain() {
+			return "has no unit"
 		}
-		return e.WithHelp("the number on the right needs a unit of the same kind as %s", unitName(a))
+		return "is in " + unitName(u)
+	}
+	e := diag.New(diag.Unit, "%s: the left side %s, the right side %s", what, side(a), side(b))
+	if a.Text == "" && a.Dim.IsPlain() || b.Text == "" && b.Dim.IsPlain() {
+		if a.Text == "" && a.Dim.IsPlain() {
+			return e.WithHelp("write the number on the left with its unit, as in 3 %s", unitName(b))
+		}
+		return e.WithHelp("write the number on the right with its unit, as in 3 %s", unitName(a))
 	}
 	return e.WithHelp("in base units these are %s and %s", a.Dim, b.Dim)
 }

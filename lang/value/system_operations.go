@@ -150,6 +150,9 @@ func multiplyAsTransfers(a, b Value) (Value, error) {
 }
 
 func divideAsTransfers(a, b Value) (Value, error) {
+	if p, m := channels(b); domains[b.Kind()] == matrixDomain && (p != 1 || m != 1) {
+		return nil, matrixDivisor(a, b)
+	}
 	return transfers("division", a, b, func(x, y *Transfer) (*Transfer, error) {
 		if p, m := y.Dims(); p != 1 || m != 1 {
 			return nil, diag.New(diag.Type, "division by a transfer function of size %s is not defined", sizeText(p, m)).WithHelp("write G1 * G2^-1")
@@ -257,6 +260,9 @@ func scalarOf(v Value) (Number, error) {
 }
 
 func divideAsPlants(a, b Value) (Value, error) {
+	if a.Kind() == KComplex || b.Kind() == KComplex {
+		return nil, complexCoefficients("division", a, b)
+	}
 	if n, err := scalarOf(b); err == nil {
 		inverse, err := divideNumbers(Int(1), n)
 		if err != nil {
