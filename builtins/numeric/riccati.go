@@ -50,13 +50,14 @@ type RiccatiSolution struct {
 // entries that are not finite, on asymmetric Q or R, on a cancelled context,
 // and when no iteration settles.
 //
-// Continuous: powers-of-two balancing (Benner 2001), ordered Schur form of the
-// Hamiltonian (A. J. Laub, IEEE TAC 24, 1979), Newton steps (D. L. Kleinman, IEEE
-// TAC 13, 1968). Sampled: structure-preserving doubling (E. K.-W. Chu, H.-Y. Fan,
-// W.-W. Lin, Linear Algebra Appl. 396, 2005), Newton steps (G. A. Hewer, IEEE TAC
-// 16, 1971), with the Cayley transform of the symplectic pencil as second
-// start. Where the first-order error estimate is poor the last steps use
-// residuals in doubled precision.
+// Powers-of-two balancing (Benner 2001); structure-preserving doubling (E. K.-W.
+// Chu, H.-Y. Fan, W.-W. Lin, Linear Algebra Appl. 396, 2005); Newton steps (D. L.
+// Kleinman, IEEE TAC 13, 1968; G. A. Hewer, IEEE TAC 16, 1971). Where doubling
+// leads to no stable closed loop, the ordered Schur form of the Hamiltonian, or
+// of the Cayley transform of the symplectic pencil, is the second start (A. J.
+// Laub, IEEE TAC 24, 1979), and for semidefinite weights the solution for larger
+// weights the third. Where the first-order error estimate is poor the last steps
+// use residuals in doubled precision.
 func Riccati(ctx context.Context, p RiccatiProblem) (*RiccatiSolution, error) {
 	if err := p.check(); err != nil {
 		return nil, err
@@ -128,7 +129,7 @@ func (p *RiccatiProblem) check() error {
 
 // search finds a stabilising solution by the first start that leads to one.
 func (d *riccatiData) search(ctx context.Context) (*riccatiState, error) {
-	starts := []func(context.Context) ([]float64, error){d.hamiltonianStart, d.regularisedStart}
+	starts := []func(context.Context) ([]float64, error){d.doublingStart, d.hamiltonianStart, d.regularisedStart}
 	if d.sampled {
 		starts = []func(context.Context) ([]float64, error){d.doublingStart, d.cayleyStart, d.regularisedStart}
 	}

@@ -14,6 +14,7 @@ type riccatiState struct {
 	poles       []complex128
 	definite    bool
 	step        float64
+	since       float64 // the step after the Schur form whose poles are kept
 	steps       int
 	doubled     bool
 	regularised bool
@@ -21,7 +22,7 @@ type riccatiState struct {
 	estimate    float64
 	size        float64
 	solver      *lyapunovSolver // with Acᵀ for coefficient
-	other       *lyapunovSolver // with Ac
+	envelope    []float64       // ±P encloses the error of X
 	method      string
 }
 
@@ -42,6 +43,7 @@ func (d *riccatiData) newton(ctx context.Context, x []float64) (*riccatiState, e
 	n := d.n
 	dx := make([]float64, n*n)
 	previous := math.Inf(1)
+	s.since = previous
 	for s.steps = 0; s.steps < mostNewtonSteps; s.steps++ {
 		if err := ctx.Err(); err != nil {
 			return nil, err
@@ -68,6 +70,7 @@ func (d *riccatiData) newton(ctx context.Context, x []float64) (*riccatiState, e
 			return s, d.settle(s)
 		}
 		previous = s.step
+		s.since = previous
 	}
 	return nil, errNotSettled
 }
@@ -113,7 +116,6 @@ func (d *riccatiData) factor(s *riccatiState) error {
 		return errNotStabilising
 	}
 	s.solver = newLyapunovSolver(n, d.sampled, t.RawMatrix().Data, z.RawMatrix().Data)
-	s.other = nil
 	return nil
 }
 
@@ -145,12 +147,13 @@ func (d *riccatiData) settle(s *riccatiState) error {
 	if err := d.assess(s, false); err != nil {
 		return err
 	}
-	if s.estimate < 1e-12*s.size || d.n > doubledOrderLimit {
+	if s.estimate < 1e-10*s.size || d.n > doubledOrderLimit {
 		return nil
 	}
 	if err := d.factor(s); err != nil {
 		return err
 	}
+	s.since = 1
 	dx := make([]float64, len(s.x))
 	kept := append([]float64(nil), s.x...)
 	before := math.Inf(1)
@@ -193,28 +196,16 @@ func (d *riccatiData) assess(s *riccatiState, doubly bool) error {
 	} else {
 		s.residual = d.residual(s.x, s.k, s.ac)
 	}
-	if s.other == nil {
-		s.other = s.solver.transposed()
-	}
-	out := d.outScale()
-	s.estimate = weightedInverseNorm(s.solver, s.other, d.perturbation(s), out)
+	s.envelope = errorEnvelope(s.solver, d.perturbation(s))
+	s.estimate, s.size = 0, 0
 	n := d.n
-	s.size = 0
 	for i := 0; i < n; i++ {
+		s.estimate = math.Max(s.estimate, s.envelope[i*n+i]/(d.scale[i]*d.scale[i]))
 		for j := 0; j < n; j++ {
-			s.size = math.Max(s.size, math.Abs(s.x[i*n+j])*out[i]*out[j])
+			s.size = math.Max(s.size, math.Abs(s.x[i*n+j])/(d.scale[i]*d.scale[j]))
 		}
 	}
 	return nil
-}
-
-// outScale are the factors that turn the entries of X back: X = D⁻¹X̃D⁻¹.
-func (d *riccatiData) outScale() []float64 {
-	out := make([]float64, d.n)
-	for i, v := range d.scale {
-		out[i] = 1 / v
-	}
-	return out
 }
 
 // perturbation is the residual left plus what rounding of the data may do to it.

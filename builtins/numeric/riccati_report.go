@@ -10,9 +10,12 @@ import (
 // finish leaves the balanced coordinates and writes the certificate.
 func (d *riccatiData) finish(s *riccatiState) (*RiccatiSolution, error) {
 	n, m := d.n, d.m
-	poles, err := Eigenvalues(mat.NewDense(n, n, append([]float64(nil), s.ac...)))
-	if err != nil {
-		return nil, err
+	poles := s.poles
+	if s.since > 1e-13 {
+		var err error
+		if poles, err = Eigenvalues(mat.NewDense(n, n, append([]float64(nil), s.ac...))); err != nil {
+			return nil, err
+		}
 	}
 	if !d.allStable(poles) {
 		return nil, errNotStabilising
@@ -39,7 +42,13 @@ func (d *riccatiData) finish(s *riccatiState) (*RiccatiSolution, error) {
 	c.Residual = ratio(largestOf(s.residual), largestOf(weight))
 	c.Condition = ratio(s.estimate, s.size*(c.Residual+2*unitRoundoff))
 	c.Digits = digitsOfError(s.estimate, s.size)
-	result.GainDigits = digitsOfError(d.gainError(s), largestOf(k))
+	// A gain that is zero is measured against the terms that cancel in it.
+	indirect, direct := d.gainError(s)
+	size := largestOf(k)
+	if size == 0 {
+		size = direct / (2 * unitRoundoff)
+	}
+	result.GainDigits = digitsOfError(indirect+direct, size)
 	if !s.definite {
 		c.note("R + BᵀXB is not positive definite: the law is a saddle point of the cost, not its minimum")
 	}
@@ -47,65 +56,34 @@ func (d *riccatiData) finish(s *riccatiState) (*RiccatiSolution, error) {
 }
 
 // gainError estimates the largest error of an entry of K in the caller's
-// coordinates: what errors of X pass on, and rounding of B, R, N.
-func (d *riccatiData) gainError(s *riccatiState) float64 {
+// coordinates: what the envelope of X passes on through M⁻¹BᵀZ (·Ac when
+// sampled), and directly from rounding of B, R, N.
+func (d *riccatiData) gainError(s *riccatiState) (indirect, direct float64) {
 	n, m := d.n, d.m
 	inverse, ok := d.inverseWeight(s.x)
 	if !ok {
-		return math.Inf(1)
+		return math.Inf(1), math.Inf(1)
 	}
-	// map takes a change Z of X to the change M⁻¹BᵀZ (·Ac when sampled) of K.
 	gainMap := make([]float64, m*n)
 	multiply(blas.NoTrans, blas.Trans, m, n, m, 1, inverse, m, d.b, m, 0, gainMap, n)
-	perturbation := d.perturbation(s)
-	packed := n * (n + 1) / 2
-	full, moved := make([]float64, n*n), make([]float64, n*n)
-	indirect := estimateOneNorm(max(packed, m*n), func(v []float64) {
-		// diag(perturbation)·Ω⁻ᵀ·mapᵀ·diag(1/scale)
-		for i := 0; i < m; i++ {
+	left := envelopeRoots(m, n, gainMap, s.envelope)
+	right := make([]float64, n)
+	for j := range right {
+		right[j] = math.Sqrt(math.Max(s.envelope[j*n+j], 0))
+	}
+	if d.sampled {
+		columns := make([]float64, n*n)
+		for i := 0; i < n; i++ {
 			for j := 0; j < n; j++ {
-				v[i*n+j] /= d.scale[j]
+				columns[j*n+i] = s.ac[i*n+j]
 			}
 		}
-		multiply(blas.Trans, blas.NoTrans, n, n, m, 1, gainMap, n, v, n, 0, full, n)
-		if d.sampled {
-			copy(moved, full)
-			multiply(blas.NoTrans, blas.Trans, n, n, n, 1, moved, n, s.ac, n, 0, full, n)
-		}
-		makeSymmetric(n, full)
-		s.other.solve(full, full)
-		clear(v)
-		for i, p := 0, 0; i < n; i++ {
-			for j := i; j < n; j++ {
-				v[p] = full[i*n+j] * perturbation[i*n+j]
-				if i != j {
-					v[p] *= 2
-				}
-				p++
-			}
-		}
-	}, func(v []float64) {
-		for i, p := 0, 0; i < n; i++ {
-			for j := i; j < n; j++ {
-				w := v[p] * perturbation[i*n+j]
-				full[i*n+j], full[j*n+i] = w, w
-				p++
-			}
-		}
-		s.solver.solve(full, full)
-		if d.sampled {
-			copy(moved, full)
-			multiply(blas.NoTrans, blas.NoTrans, n, n, n, 1, moved, n, s.ac, n, 0, full, n)
-		}
-		clear(v)
-		multiply(blas.NoTrans, blas.NoTrans, m, n, n, 1, gainMap, n, full, n, 0, v, n)
-		for i := 0; i < m; i++ {
-			for j := 0; j < n; j++ {
-				v[i*n+j] /= d.scale[j]
-			}
-		}
-	})
-	return indirect + d.directGainError(s, inverse)
+		right = envelopeRoots(n, n, columns, s.envelope)
+	}
+	for j := range right {
+		indirect = math.Max(indirect, largestOf(left)*right[j]/d.scale[j])
+	}
+	return indirect, d.directGainError(s, inverse)
 }
 
 // inverseWeight is (R + BᵀXB)⁻¹, or R⁻¹.

@@ -84,22 +84,44 @@ func (d *riccatiData) solveNoting(top, x []float64) bool {
 	return largestOf(x) < math.Inf(1)
 }
 
-// doublingStart runs the structure-preserving doubling algorithm
-//
-//	A ← A·W⁻¹·A,  G ← G + A·W⁻¹·G·Aᵀ,  H ← H + Aᵀ·H·W⁻¹·A,  W = I + G·H,
-//
-// from H = Q; H tends to X quadratically, linearly with ratio 1/2 when a closed
-// loop pole lies on the circle.
+// doublingStart runs the doubling algorithm on the sampled equation, or on the
+// continuous one after the Cayley transform z = (s + γ)/(s − γ), which maps the
+// stable half plane into the circle and keeps X.
 func (d *riccatiData) doublingStart(ctx context.Context) ([]float64, error) {
-	n := d.n
-	d.method = "structure-preserving doubling"
 	a := append([]float64(nil), d.reducedA...)
 	g := append([]float64(nil), d.reducedG...)
 	h := append([]float64(nil), d.reducedQ...)
+	if !d.sampled {
+		var ok bool
+		if a, g, h, ok = d.transformedTriple(); !ok {
+			return nil, errNoStart
+		}
+	}
+	d.method = "structure-preserving doubling"
+	h, err := d.double(ctx, a, g, h)
+	if err != nil {
+		return nil, err
+	}
+	d.addShift(h)
+	return h, nil
+}
+
+// mostDoublings suffices for poles within 1e-15 of the circle; beyond, there is
+// no telling them from poles on it.
+const mostDoublings = 50
+
+// double runs the structure-preserving doubling algorithm
+//
+//	A ← A·W⁻¹·A,  G ← G + A·W⁻¹·G·Aᵀ,  H ← H + Aᵀ·H·W⁻¹·A,  W = I + G·H,
+//
+// whose H tends to X quadratically, linearly with ratio 1/2 when a closed-loop
+// pole lies on the circle. The arguments are destroyed.
+func (d *riccatiData) double(ctx context.Context, a, g, h []float64) ([]float64, error) {
+	n := d.n
 	w, work := make([]float64, n*n), make([]float64, n*n)
 	wa, wg := make([]float64, n*n), make([]float64, n*n)
 	pivots := make([]int, n)
-	for step := 0; step < 60; step++ {
+	for step := 0; step < mostDoublings; step++ {
 		if err := ctx.Err(); err != nil {
 			return nil, err
 		}
@@ -111,10 +133,9 @@ func (d *riccatiData) doublingStart(ctx context.Context) ([]float64, error) {
 			return nil, errNoStart
 		}
 		copy(wa, a)
-		copy(wg, g)
 		kernels.Dgetrs(blas.NoTrans, n, n, w, n, pivots, wa, n)
+		copy(wg, g)
 		kernels.Dgetrs(blas.NoTrans, n, n, w, n, pivots, wg, n)
-		// H ← H + Aᵀ·(H·W⁻¹A)
 		multiply(blas.NoTrans, blas.NoTrans, n, n, n, 1, h, n, wa, n, 0, work, n)
 		multiply(blas.Trans, blas.NoTrans, n, n, n, 1, a, n, work, n, 0, w, n)
 		makeSymmetric(n, w)
@@ -125,12 +146,11 @@ func (d *riccatiData) doublingStart(ctx context.Context) ([]float64, error) {
 		if !(size < 1e280) {
 			return nil, errNoStart
 		}
-		if change <= 1e-11*size {
+		// Newton's steps square the error that is left.
+		if change <= 1e-9*size {
 			d.flat = d.flat || largestOf(d.reducedG)*size > 1e12*(1+largestOf(d.reducedA))
-			d.addShift(h)
 			return h, nil
 		}
-		// G ← G + A·(W⁻¹G)·Aᵀ, A ← A·W⁻¹A
 		multiply(blas.NoTrans, blas.NoTrans, n, n, n, 1, a, n, wg, n, 0, work, n)
 		multiply(blas.NoTrans, blas.Trans, n, n, n, 1, work, n, a, n, 1, g, n)
 		makeSymmetric(n, g)
@@ -138,6 +158,102 @@ func (d *riccatiData) doublingStart(ctx context.Context) ([]float64, error) {
 		multiply(blas.NoTrans, blas.NoTrans, n, n, n, 1, work, n, wa, n, 0, a, n)
 	}
 	return nil, errNoStart
+}
+
+// transformedTriple gives the start of the doubling for the continuous equation
+// (Chu, Fan, Lin 2005, section 2): with S = A − γI and V = Sᵀ + Q·S⁻¹·G
+//
+//	A₀ = I + 2γ·V⁻ᵀ,  G₀ = 2γ·S⁻¹·G·V⁻¹,  H₀ = 2γ·V⁻¹·Q·S⁻¹.
+//
+// γ is the root mean square of what the eigenvalues of the Hamiltonian can be,
+// moved on while S is nearly singular.
+func (d *riccatiData) transformedTriple() (a, g, h []float64, ok bool) {
+	n := d.n
+	size := frobenius(d.reducedA)
+	gq := make([]float64, n*n)
+	multiply(blas.NoTrans, blas.NoTrans, n, n, n, 1, d.reducedG, n, d.reducedQ, n, 0, gq, n)
+	gamma := math.Sqrt((size*size + frobenius(gq)) / float64(n))
+	if !(gamma > 0) || gamma > 1e150 {
+		return nil, nil, nil, false
+	}
+	pivots := make([]int, n)
+	for try := 0; try < 4; try++ {
+		s := append([]float64(nil), d.reducedA...)
+		for i := 0; i < n; i++ {
+			s[i*n+i] -= gamma
+		}
+		if clear := factorClear(n, s, pivots); clear > 1e-4 {
+			return d.tripleFor(gamma, s, pivots)
+		}
+		gamma *= 1.37
+	}
+	return nil, nil, nil, false
+}
+
+// factorClear factors s in place and gives the ratio of the smallest to the
+// largest pivot.
+func factorClear(n int, s []float64, pivots []int) float64 {
+	if !kernels.Dgetrf(n, n, s, n, pivots) {
+		return 0
+	}
+	smallest, largest := math.Inf(1), 0.0
+	for i := 0; i < n; i++ {
+		v := math.Abs(s[i*n+i])
+		smallest, largest = math.Min(smallest, v), math.Max(largest, v)
+	}
+	return smallest / largest
+}
+
+// tripleFor computes the triple given γ and the factored S.
+func (d *riccatiData) tripleFor(gamma float64, s []float64, pivots []int) (a, g, h []float64, ok bool) {
+	n := d.n
+	solve := func(trans blas.Transpose, lu []float64, pivots []int, right []float64) []float64 {
+		x := append([]float64(nil), right...)
+		kernels.Dgetrs(trans, n, n, lu, n, pivots, x, n)
+		return x
+	}
+	sg := solve(blas.NoTrans, s, pivots, d.reducedG) // S⁻¹G
+	sq := solve(blas.Trans, s, pivots, d.reducedQ)   // S⁻ᵀQ = (Q·S⁻¹)ᵀ
+	v := make([]float64, n*n)
+	multiply(blas.NoTrans, blas.NoTrans, n, n, n, 1, d.reducedQ, n, sg, n, 0, v, n)
+	for i := 0; i < n; i++ {
+		for j := 0; j < n; j++ {
+			v[i*n+j] += d.reducedA[j*n+i]
+		}
+		v[i*n+i] -= gamma
+	}
+	vp := make([]int, n)
+	if factorClear(n, v, vp) < 1e-10 {
+		return nil, nil, nil, false
+	}
+	identity := make([]float64, n*n)
+	for i := 0; i < n; i++ {
+		identity[i*n+i] = 2 * gamma
+	}
+	a = solve(blas.Trans, v, vp, identity)
+	g = solve(blas.Trans, v, vp, transposeEntries(n, sg)) // (S⁻¹G·V⁻¹)ᵀ, symmetric
+	h = solve(blas.NoTrans, v, vp, transposeEntries(n, sq))
+	for i := 0; i < n; i++ {
+		a[i*n+i]++
+	}
+	for i := range g {
+		g[i] *= 2 * gamma
+		h[i] *= 2 * gamma
+	}
+	makeSymmetric(n, g)
+	makeSymmetric(n, h)
+	return a, g, h, true
+}
+
+// transposeEntries copies the transposed n×n matrix.
+func transposeEntries(n int, x []float64) []float64 {
+	t := make([]float64, n*n)
+	for i := 0; i < n; i++ {
+		for j := 0; j < n; j++ {
+			t[j*n+i] = x[i*n+j]
+		}
+	}
+	return t
 }
 
 // addShift goes from Y to X = shift + Y.
@@ -215,11 +331,10 @@ func (d *riccatiData) regularisedStart(ctx context.Context) ([]float64, error) {
 	for i := 0; i < n; i++ {
 		rounded.reducedQ[i*n+i] += delta
 	}
-	start := rounded.hamiltonianStart
-	if d.sampled {
-		start = rounded.doublingStart
+	x, err := rounded.doublingStart(ctx)
+	if err != nil && !d.sampled {
+		x, err = rounded.hamiltonianStart(ctx)
 	}
-	x, err := start(ctx)
 	d.method = "Newton steps down from the solution for larger weights"
 	return x, err
 }

@@ -53,8 +53,8 @@ func (p pairs) values() []complex128 {
 	return w
 }
 
-// relativeError is the largest difference relative to the largest entry of want.
-func relativeError(got, want *mat.Dense) float64 {
+// errorRelativeTo is the largest difference relative to the largest entry of want.
+func errorRelativeTo(got, want *mat.Dense) float64 {
 	var d mat.Dense
 	d.Sub(got, want)
 	return peakEntry(&d) / peakEntry(want)
@@ -122,7 +122,7 @@ func checkPublished(t *testing.T, c riccatiCase) {
 		t.Fatal(err)
 	}
 	compare := func(name string, got *mat.Dense, want *mat.Dense, digits float64) {
-		e := relativeError(got, want)
+		e := errorRelativeTo(got, want)
 		if e > c.Tolerance.Rel {
 			t.Errorf("%s is off by %g", name, e)
 		}

@@ -140,8 +140,14 @@ func schurInPlace(n, low, high int, a, z []float64, w []complex128) (ok bool) {
 }
 
 // schurWork is the length of the scratch space that Dgehrd, Dorghr and Dhseqr
-// run well in; 64 columns is the widest block they use.
-func schurWork(n int) int { return n*64 + 65*64 }
+// run well in: 64 columns is the widest block they use, and below order 64 they
+// use none.
+func schurWork(n int) int {
+	if n < 64 {
+		return 4 * n
+	}
+	return n*64 + 65*64
+}
 
 // reflectionVector is a fixed unit vector without zero entries, different for
 // each attempt, for the reflection that restarts a failed iteration.

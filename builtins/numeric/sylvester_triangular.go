@@ -252,6 +252,10 @@ func (e *triangularEquation) smallBlock(p, q int, tb, rb, rhs *[4]float64) {
 		rhs[0] /= e.guard(pivot)
 		return
 	}
+	if p*q == 2 {
+		e.pairBlock(p, tb, rb, rhs)
+		return
+	}
 	var k [4][5]float64
 	size := p * q
 	for a := 0; a < p; a++ {
@@ -283,6 +287,29 @@ func (e *triangularEquation) smallBlock(p, q int, tb, rb, rhs *[4]float64) {
 			rhs[2*a+c] = x[a*q+c]
 		}
 	}
+}
+
+// pairBlock solves for a 1×2 or 2×1 block: two equations, partial pivoting.
+func (e *triangularEquation) pairBlock(p int, tb, rb, rhs *[4]float64) {
+	block, scalar, second := rb, tb[0], 1
+	if p == 2 {
+		block, scalar, second = tb, rb[0], 2
+	}
+	a, b, c, d := block[0], block[1], block[2], block[3]
+	if e.sampled {
+		a, b, c, d = a*scalar-1, b*scalar, c*scalar, d*scalar-1
+	} else {
+		a, d = a+scalar, d+scalar
+	}
+	x, y := rhs[0], rhs[second]
+	if math.Abs(c) > math.Abs(a) {
+		a, b, c, d = c, d, a, b
+		x, y = y, x
+	}
+	a = e.guard(a)
+	factor := c / a
+	y = (y - factor*x) / e.guard(d-factor*b)
+	rhs[0], rhs[second] = (x-b*y)/a, y
 }
 
 // guard keeps a pivot away from zero.
