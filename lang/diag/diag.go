@@ -10,6 +10,7 @@ import (
 	"fmt"
 	"sort"
 	"strings"
+	"unicode"
 	"unicode/utf8"
 
 	"github.com/mattn/go-runewidth"
@@ -136,11 +137,12 @@ func (e *Error) Unwrap() error { return e.Cause }
 
 // Error is "FILE:LINE:COLUMN: message", or the message alone while the place is unknown.
 func (e *Error) Error() string {
+	message := strings.Map(visible, e.Message)
 	if e.Source == nil {
-		return e.Message
+		return message
 	}
 	line, col := e.Source.Position(e.Span.Start)
-	return fmt.Sprintf("%s:%d:%d: %s", e.Source.Name, line, col, e.Message)
+	return fmt.Sprintf("%s:%d:%d: %s", strings.Map(visible, e.Source.Name), line, col, message)
 }
 
 // Render shows the error with its source line, a caret under the exact place and the
@@ -158,45 +160,86 @@ func (e *Error) Render() string {
 		}
 	}
 	if e.Help != "" {
-		fmt.Fprintf(&b, "  %s\n", e.Help)
+		fmt.Fprintf(&b, "  %s\n", strings.Map(visible, e.Help))
 	}
 	return b.String()
 }
 
-// widest excerpt of a source line, in terminal cells
+// excerptCells is the widest excerpt of a source line, in terminal columns.
 const excerptCells = 100
 
-// excerpt cuts a long line around the column, makes tabs and control characters
-// harmless, and returns the cells before the caret and the caret's width.
-func excerpt(text string, col int, span Span) (shown string, before, width int) {
-	clean := func(s string) string {
-		return strings.Map(func(r rune) rune {
-			if r == '\t' {
-				return ' '
-			}
-			if r < ' ' || r == 0x7f || r == utf8.RuneError {
-				return '·'
-			}
-			return r
-		}, s)
+// terminal measures text in columns, whatever the user's locale is.
+var terminal = &runewidth.Condition{StrictEmojiNeutral: true}
+
+// visible makes a character harmless on a terminal: nothing that moves the cursor or
+// turns the reading direction comes through.
+func visible(r rune) rune {
+	switch {
+	case r == '\t' || r == '\u00a0':
+		return ' '
+	case unicode.IsControl(r) || r == utf8.RuneError || unicode.Is(unicode.Bidi_Control, r) || r == '\ufeff':
+		return '·'
 	}
+	return r
+}
+
+// excerpt cuts a long line around the column and returns the columns before the caret and
+// the caret's width.
+func excerpt(text string, col int, span Span) (shown string, before, width int) {
 	runes := []rune(text)
 	at := min(col-1, len(runes))
-	from := 0
-	lead := ""
-	if runewidth.StringWidth(clean(text)) > excerptCells && at > excerptCells/2 {
-		from, lead = at-excerptCells/2, "…"
+	end := at + caretRunes(runes[at:], text, at, span)
+	for i, r := range runes {
+		runes[i] = visible(r)
 	}
-	to := min(len(runes), from+excerptCells)
-	tail := ""
-	if to < len(runes) {
-		tail = "…"
+	from, to := 0, len(runes)
+	lead, tail := "", ""
+	if terminal.StringWidth(string(runes)) > excerptCells {
+		from, to = window(runes, at)
+		if from > 0 {
+			lead = "…"
+		}
+		if to < len(runes) {
+			tail = "…"
+		}
 	}
-	before = runewidth.StringWidth(lead + clean(string(runes[from:at])))
-	end := at
-	for n := span.End - span.Start; end < to && n > 0; end++ {
-		n -= utf8.RuneLen(runes[end])
+	before = terminal.StringWidth(lead + string(runes[from:at]))
+	width = max(1, terminal.StringWidth(string(runes[at:max(at, min(end, to))])))
+	return lead + string(runes[from:to]) + tail, before, width
+}
+
+// caretRunes is how many characters of the line, from the one at the caret, the span covers.
+func caretRunes(rest []rune, text string, at int, span Span) int {
+	offset := 0
+	for range at {
+		_, size := utf8.DecodeRuneInString(text[offset:])
+		offset += size
 	}
-	width = max(1, runewidth.StringWidth(clean(string(runes[at:end]))))
-	return lead + clean(string(runes[from:to])) + tail, before, width
+	left, count := span.End-span.Start, 0
+	for ; count < len(rest) && left > 0; count++ {
+		_, size := utf8.DecodeRuneInString(text[offset:])
+		offset += size
+		left -= size
+	}
+	return count
+}
+
+// window chooses the part of a long line that shows the character at the caret, half of
+// it before and half after.
+func window(runes []rune, at int) (from, to int) {
+	from = at
+	for cells := 0; from > 0; from-- {
+		cells += terminal.RuneWidth(runes[from-1])
+		if cells > excerptCells/2 {
+			break
+		}
+	}
+	to = from
+	for cells := 0; to < len(runes); to++ {
+		cells += terminal.RuneWidth(runes[to])
+		if cells > excerptCells {
+			break
+		}
+	}
+	return from, max(to, at)
 }

@@ -3,9 +3,10 @@ package syntax
 import (
 	"strings"
 
-	"github.com/yuin/goldmark"
 	"github.com/yuin/goldmark/ast"
+	markdown "github.com/yuin/goldmark/parser"
 	"github.com/yuin/goldmark/text"
+	order "github.com/yuin/goldmark/util"
 
 	"gainwright/lang/diag"
 )
@@ -67,37 +68,77 @@ func refuseEncoding(src *diag.Source) {
 }
 
 // fenced is the body of one fenced block. Its text is the whole notebook with everything
-// else blank, so that places need no translation, also where each line of
-// the block is indented (in a list) or marked (in a quotation).
+// else blank, so that places need no translation, also where each line of the block is
+// indented (in a list) or marked (in a quotation).
 type fenced struct {
-	span   diag.Span
-	text   string
-	prefix string // what stands before the code on the body's first line
+	span      diag.Span
+	text      string
+	lineStart int    // where the body's first line begins, prefix included
+	prefix    string // what stands before the code of a line: indentation or quotation marks
 }
+
+// byteOrderMark is what some editors put before a UTF-8 text.
+const byteOrderMark = "\ufeff"
+
+// containerDepth is how deep lists and quotations may lie in one another. Deeper ones are
+// prose to us, because the time to find them grows with the square of their depth.
+const containerDepth = 32
+
+// shallow keeps a block parser from opening containers too deep.
+type shallow struct{ markdown.BlockParser }
+
+// Open opens the block unless it lies too deep.
+func (s shallow) Open(parent ast.Node, reader text.Reader, pc markdown.Context) (ast.Node, markdown.State) {
+	depth := 0
+	for n := parent; n != nil; n = n.Parent() {
+		depth++
+	}
+	if depth > 2*containerDepth { // a list and its item are two
+		return nil, markdown.NoChildren
+	}
+	return s.BlockParser.Open(parent, reader, pc)
+}
+
+// blockParser finds blocks only: what stands inside a paragraph is of no interest here.
+var blockParser = markdown.NewParser(markdown.WithBlockParsers(
+	order.Prioritized(markdown.NewSetextHeadingParser(), 100),
+	order.Prioritized(markdown.NewThematicBreakParser(), 200),
+	order.Prioritized(shallow{markdown.NewListParser()}, 300),
+	order.Prioritized(markdown.NewListItemParser(), 400),
+	order.Prioritized(markdown.NewCodeBlockParser(), 500),
+	order.Prioritized(markdown.NewATXHeadingParser(), 600),
+	order.Prioritized(markdown.NewFencedCodeBlockParser(), 700),
+	order.Prioritized(shallow{markdown.NewBlockquoteParser()}, 800),
+	order.Prioritized(markdown.NewHTMLBlockParser(), 900),
+	order.Prioritized(markdown.NewParagraphParser(), 1000),
+))
 
 func notebookBlocks(src *diag.Source) []fenced {
 	_, bodyStart := FrontMatter(src)
-	markdown := []byte(src.Text)
-	blank(markdown[:bodyStart])
+	page := []byte(src.Text)
+	blank(page[:bodyStart])
+	if strings.HasPrefix(src.Text, byteOrderMark) {
+		blank(page[:len(byteOrderMark)])
+	}
 	masked := []byte(src.Text)
 	blank(masked)
 	var blocks []fenced
-	document := goldmark.DefaultParser().Parse(text.NewReader(markdown))
+	document := blockParser.Parse(text.NewReader(page))
 	_ = ast.Walk(document, func(n ast.Node, entering bool) (ast.WalkStatus, error) {
 		code, ok := n.(*ast.FencedCodeBlock)
-		if !ok || !entering || code.Lines().Len() == 0 || !markedGain(code, markdown) {
+		if !ok || !entering || code.Lines().Len() == 0 || !markedGain(code, page) {
 			return ast.WalkContinue, nil
 		}
 		lines := code.Lines()
 		for i := range lines.Len() {
 			line := lines.At(i)
-			copy(masked[line.Start:line.Stop], markdown[line.Start:line.Stop])
+			copy(masked[line.Start:line.Stop], page[line.Start:line.Stop])
 		}
-		first := lines.At(0)
-		start := strings.LastIndexByte(src.Text[:first.Start], '\n') + 1
+		first := lines.At(0).Start
 		blocks = append(blocks, fenced{
-			span:   diag.Span{Start: first.Start, End: lines.At(lines.Len() - 1).Stop},
-			prefix: src.Text[start:first.Start],
+			span:      diag.Span{Start: first, End: lines.At(lines.Len() - 1).Stop},
+			lineStart: lineStart(src.Text, first),
+			prefix:    bodyPrefix(lines, src.Text),
 		})
 		return ast.WalkContinue, nil
 	})
@@ -108,11 +149,25 @@ func notebookBlocks(src *diag.Source) []fenced {
 	return blocks
 }
 
-func markedGain(code *ast.FencedCodeBlock, markdown []byte) bool {
+func lineStart(text string, offset int) int { return strings.LastIndexByte(text[:offset], '\n') + 1 }
+
+// bodyPrefix is what stands before the code, seen at the first line that is not blank: an
+// editor may have cut the blanks of an empty one.
+func bodyPrefix(lines *text.Segments, source string) string {
+	for i := range lines.Len() {
+		line := lines.At(i)
+		if strings.TrimSpace(source[line.Start:line.Stop]) != "" {
+			return source[lineStart(source, line.Start):line.Start]
+		}
+	}
+	return ""
+}
+
+func markedGain(code *ast.FencedCodeBlock, page []byte) bool {
 	if code.Info == nil {
 		return false
 	}
-	words := strings.Fields(string(code.Info.Segment.Value(markdown)))
+	words := strings.Fields(string(code.Info.Segment.Value(page)))
 	return len(words) > 0 && words[0] == "gain"
 }
 
@@ -131,8 +186,8 @@ func blank(text []byte) {
 func FrontMatter(src *diag.Source) (values map[string]string, bodyOffset int) {
 	values = map[string]string{}
 	offset := 0
-	if strings.HasPrefix(src.Text, "\ufeff") {
-		offset = len("\ufeff")
+	if strings.HasPrefix(src.Text, byteOrderMark) {
+		offset = len(byteOrderMark)
 	}
 	first := true
 	for line := range strings.Lines(src.Text[offset:]) {

@@ -190,8 +190,8 @@ func (p *parser) mode() mode {
 // enter takes an opening bracket and sets what line ends mean inside.
 func (p *parser) enter(m mode, holds inside) {
 	t := p.take()
-	if len(p.open) >= nestingDepth {
-		p.fail(diag.Limit, t.span, "", "brackets are nested more than %d deep", nestingDepth)
+	if holds == insideBody {
+		p.setRole(roleBody)
 	}
 	p.open = append(p.open, opening{mode: m, holds: holds, sign: t.text, span: t.span})
 }

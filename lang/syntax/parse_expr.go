@@ -47,8 +47,10 @@ func (p *parser) comparison() Expr {
 	}
 	whole := p.binary(left, op, p.interval)
 	if second := p.oneOf(comparisons); second != "" {
+		at := p.raw(0).span
 		a, b := p.written(left.Extent()), p.written(whole.(*Binary).R.Extent())
-		p.fail(diag.Syntax, p.raw(0).span, "write "+a+" "+op+" "+b+" and "+b+" "+second+" …", "comparisons are not chained")
+		c := p.written(p.binary(whole, second, p.interval).(*Binary).R.Extent())
+		p.fail(diag.Syntax, at, "write "+a+" "+op+" "+b+" and "+b+" "+second+" "+c, "comparisons are not chained")
 	}
 	return whole
 }
@@ -165,6 +167,6 @@ func (p *parser) binary(left Expr, op string, operand func() Expr) Expr {
 	p.skipLines()
 	right := operand()
 	span := left.Extent().Join(right.Extent())
-	p.grown(span, max(height, p.height))
+	p.grown(at.span, max(height, p.height))
 	return &Binary{Op: op, L: left, R: right, At: at.span, Span: span}
 }

@@ -31,6 +31,9 @@ func (p *parser) body(form string, item func() Item) []Item {
 			p.leave()
 			return items
 		}
+		if p.raw(0).kind == tokenEnd {
+			p.unexpected(p.raw(0))
+		}
 		items = append(items, item())
 		if t := p.raw(0); !t.is(";") && !t.is("}") && t.kind != tokenNewline {
 			p.unexpected(t)

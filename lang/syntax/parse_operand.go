@@ -83,16 +83,16 @@ func (p *parser) number() Expr {
 	t := p.take()
 	n := &Number{Text: t.text, Value: decimal(t.text), Imaginary: t.imaginary, Span: t.span}
 	p.rescan()
-	if next := p.raw(0); next.is("%") {
+	if p.scan.inlineBlank(); p.scan.at("%") {
 		p.take()
 		p.setRole(rolePercent)
-		n.Percent, n.Span.End = true, next.span.End
+		n.Percent = true
 		n.Value = n.Value.Quo(n.Value, big.NewRat(100, 1))
 	} else {
 		p.rescan()
 		n.Unit = p.unit(p.scan.unitAfterNumber())
-		n.Span.End = p.prev.span.End
 	}
+	n.Span.End = p.prev.span.End
 	p.grown(n.Span, 0)
 	return n
 }

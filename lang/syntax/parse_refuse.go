@@ -92,7 +92,7 @@ func (p *parser) expectOpen(sign, form string) {
 }
 
 func (p *parser) unexpectedIn(t token, wanted, form string) {
-	p.failHere(t, form, "%s is expected before %s", wanted, describe(t))
+	p.failHere(t, form, "%q is expected before %s", wanted, describe(t))
 }
 
 // newName reads a name that is bound or referred to here.
@@ -269,11 +269,38 @@ func (p *parser) unexpectedWord(t token) {
 	p.missingOperator(t)
 }
 
+// wordHelp is the form of a statement or item whose first word was read as a name.
+var wordHelp = map[string]string{
+	"given":    "given NAME = VALUE stands in model NAME { … }",
+	"input":    "input … stands in model NAME { … } or diagram NAME { … }",
+	"output":   "output … stands in model NAME { … } or diagram NAME { … }",
+	"state":    "state … stands in model NAME { … }",
+	"let":      "let stands in model NAME { … }; elsewhere write NAME = EXPR",
+	"rate":     "rate NAME = EXPR stands in model NAME { … }",
+	"next":     "next NAME = EXPR stands in model NAME { … }",
+	"around":   "around … stands in model NAME { … }",
+	"every":    "every T stands in model NAME { … }",
+	"use":      `use "file.gain"`,
+	"model":    "model NAME { … }",
+	"diagram":  "diagram NAME { … }",
+	"study":    studyForm,
+	"schedule": scheduleForm,
+	"define":   `define f(x, y) = EXPR, "what it gives"`,
+}
+
 // missingOperator refuses two values side by side.
 func (p *parser) missingOperator(t token) {
 	before, after := p.written(p.prev.span), p.written(t.span)
 	if t.kind == tokenNumber {
 		after = shortened(t.text)
+	}
+	for word, help := range wordHelp {
+		if p.prev.word(word) {
+			p.failHere(t, help, "an operator is missing between %s and %s", before, after)
+		}
+	}
+	if p.prev.is(")") || p.prev.is("]") || p.prev.is("%") {
+		before = "…"
 	}
 	separated := p.holds(insideList) || p.holds(insideIndex) || p.holds(insideCall)
 	switch {
@@ -282,13 +309,13 @@ func (p *parser) missingOperator(t token) {
 	case separated:
 		p.failHere(t, "", "a comma or an operator is missing between %s and %s", before, after)
 	case t.is("(") || t.is("["):
-		p.failHere(t, "a product is written with *", "an operator is missing between %s and %s", before, after)
+		p.failHere(t, "a product is written with *", "an operator is missing between %s and %s", p.written(p.prev.span), after)
 	case t.kind == tokenQuote:
 		p.failHere(t, "", "an operator is missing before the text in quotes")
 	case t.kind == tokenWord && p.prev.kind != tokenNumber:
-		p.failHere(t, "a product is written "+before+" * "+after+"; a unit stands only after a number", "an operator is missing between %s and %s", before, after)
+		p.failHere(t, "a product is written "+before+" * "+after+"; a unit stands only after a number", "an operator is missing between %s and %s", p.written(p.prev.span), after)
 	}
-	p.failHere(t, "a product is written "+before+" * "+after, "an operator is missing between %s and %s", before, after)
+	p.failHere(t, "a product is written "+before+" * "+after, "an operator is missing between %s and %s", p.written(p.prev.span), after)
 }
 
 // noteDivisor remarks that the unit in 1/100 s belongs to the 100.

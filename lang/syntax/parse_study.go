@@ -2,7 +2,10 @@ package syntax
 
 import "gainwright/lang/diag"
 
-const studyForm = "study NAME = EXPR over MODEL samples N seed N at corners"
+const (
+	studyForm    = "study NAME = EXPR over MODEL samples N seed N at corners"
+	scheduleForm = "schedule NAME = EXPR over MODEL.PARAMETER from A to B in N steps"
+)
 
 // study reads study NAME = EXPR over …, or study NAME = { name: EXPR, … } over ….
 func (p *parser) study() Statement {
@@ -28,6 +31,9 @@ func (p *parser) studyEntries() []StudyEntry {
 		p.skipSeparators()
 		if p.raw(0).is("}") {
 			break
+		}
+		if p.raw(0).kind == tokenEnd {
+			p.unexpected(p.raw(0))
 		}
 		name := p.newName("the name of a result")
 		p.markFirst()
@@ -115,7 +121,7 @@ func (p *parser) overSensitivity(x Expr) *Over {
 
 // schedule reads schedule NAME = EXPR over MODEL.PARAMETER from A to B in N steps.
 func (p *parser) schedule() Statement {
-	const form = "schedule NAME = EXPR over MODEL.PARAMETER from A to B in N steps"
+	const form = scheduleForm
 	start := p.takeFirst().span.Start
 	s := &Schedule{Name: p.newName("the schedule's name")}
 	p.expect("=", form)

@@ -11,6 +11,7 @@ const (
 	roleSpaced       // a blank on both sides
 	rolePostfix      // no blank before
 	rolePercent      // a blank before only as the author chose
+	roleBody         // the brace that opens a model, a diagram or a study
 	roleSignals      // the word input, state or output at the start of its line
 )
 

@@ -32,7 +32,7 @@ var habits = []struct{ written, help string }{
 // refuseHabit fails on a spelling that has another one here.
 func (s *scanner) refuseHabit(rest string) {
 	for _, h := range habits {
-		if strings.HasPrefix(rest, h.written) && !strings.HasPrefix(rest, "=>=") {
+		if strings.HasPrefix(rest, h.written) {
 			s.fail(diag.Syntax, diag.Span{Start: s.pos, End: s.pos + len(h.written)}, h.help, "%s is no operator", h.written)
 		}
 	}
