@@ -180,11 +180,15 @@ func ReachableSplit(a, b *Matrix) (*Split, error) {
 	if err != nil {
 		return nil, err
 	}
-	reached, err := newSubspace(basis)
+	unit := Identity(a.rows)
+	spanning := basis
+	if basis.cols == a.rows {
+		spanning = unit
+	}
+	reached, err := newSubspace(spanning)
 	if err != nil {
 		return nil, err
 	}
-	unit := Identity(a.rows)
 	s := &Split{Rank: basis.cols, Basis: basis, Indices: indices}
 	s.Inverse = must(Augment(reached.columns, unit.Columns(reached.rest...)))
 	lower, err := reached.outside(unit)

@@ -3,6 +3,7 @@ package exact
 import (
 	"math"
 	"math/big"
+	"math/cmplx"
 )
 
 // complexFloat is a complex number in multiple precision.
@@ -143,7 +144,7 @@ func (r *refinement) repulsion(i int) complex128 {
 			sum += 1 / difference
 		}
 	}
-	if math.IsInf(real(sum), 0) || math.IsInf(imag(sum), 0) || sum != sum {
+	if math.IsInf(real(sum), 0) || math.IsInf(imag(sum), 0) || cmplx.IsNaN(sum) {
 		return 0
 	}
 	return sum
