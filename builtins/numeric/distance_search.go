@@ -230,6 +230,9 @@ func (d *distanceSearch) descend(z complex128, steps int) {
 // give its second derivatives for a Newton step, and where that does not help
 // a step along g is lengthened as long as it does.
 func (d *distanceSearch) polish() {
+	d.iteration.tolerance, d.iteration.steps = 1e-14, 60
+	d.high = math.Inf(1)
+	d.evaluate(d.at)
 	for round := 0; round < 20 && d.goOn(); round++ {
 		z, before := d.at, d.high
 		l := d.evaluate(z)

@@ -175,15 +175,17 @@ const smallestTriplets = 3
 // singular vector of the smallest by subspace iteration on (R·Rᴴ)⁻¹ with
 // Rayleigh–Ritz.
 type inverseIteration struct {
-	n, width int
-	basis    [smallestTriplets][]complex128
-	gram     [smallestTriplets * smallestTriplets]complex128
-	turn     [smallestTriplets * smallestTriplets]complex128
-	mixed    [smallestTriplets][]complex128
+	n, width  int
+	tolerance float64 // relative change of the smallest value at which to stop
+	steps     int
+	basis     [smallestTriplets][]complex128
+	gram      [smallestTriplets * smallestTriplets]complex128
+	turn      [smallestTriplets * smallestTriplets]complex128
+	mixed     [smallestTriplets][]complex128
 }
 
 func newInverseIteration(n int) *inverseIteration {
-	it := &inverseIteration{n: n, width: min(n, smallestTriplets)}
+	it := &inverseIteration{n: n, width: min(n, smallestTriplets), tolerance: 1e-5, steps: 14}
 	for k := 0; k < it.width; k++ {
 		it.basis[k], it.mixed[k] = make([]complex128, n), make([]complex128, n)
 	}
@@ -207,7 +209,7 @@ func (it *inverseIteration) start() {
 func (it *inverseIteration) run(t *shiftedTrapezoid, floor float64) (first, second, uncertainty float64) {
 	it.start()
 	var before [smallestTriplets]float64
-	for step := 0; step < 14; step++ {
+	for step := 0; step < it.steps; step++ {
 		for k := 0; k < it.width; k++ {
 			t.solve(it.basis[k], floor)
 		}
@@ -222,7 +224,7 @@ func (it *inverseIteration) run(t *shiftedTrapezoid, floor float64) (first, seco
 			changeSecond = math.Abs(values[1]-before[1]) / values[1]
 		}
 		before = values
-		if step > 0 && change < 1e-5 && changeSecond < 5e-3 {
+		if step > 0 && change < it.tolerance && changeSecond < 5e-3 {
 			uncertainty = change
 			break
 		}

@@ -13,9 +13,11 @@ type reducedGain struct {
 	method string
 	// x holds the eigenvectors when the loop is diagonalizable by design: real
 	// ones, and √2 times the real and imaginary parts for pairs. order lists
-	// the poles they belong to.
-	x, inverse []float64
-	order      []wantedPole
+	// the poles they belong to, sensitivities theirs, condition is κ₂(x).
+	x             []float64
+	condition     float64
+	sensitivities []float64
+	order         []wantedPole
 }
 
 // rotation is the unitary [c, s; −s̄, c] with real c.

@@ -105,8 +105,33 @@ func (t *assignment) examine(placement *Placement, reduced *reducedGain) error {
 	if len(system.Clusters) > 0 && t.repeatsTooOften() {
 		placement.Sensitivity = math.Inf(1)
 	}
+	if reduced.x != nil && len(t.kept) == 0 {
+		t.useDesigned(placement, reduced, mat.Norm(loop, 2))
+		system.Clusters = nil
+		for j, i := range position {
+			system.ErrorOf[j], system.Condition[j] = placement.PoleError[i], placement.PoleSensitivity[i]
+		}
+	}
 	t.compare(placement, system, position)
 	return nil
+}
+
+// useDesigned takes sensitivities from the eigenvectors that the gain was made
+// from: recomputed ones are arbitrary where a pole is repeated.
+func (t *assignment) useDesigned(placement *Placement, reduced *reducedGain, norm float64) {
+	placement.Sensitivity = reduced.condition
+	var spelled []complex128
+	var sensitivities []float64
+	for p, w := range reduced.order {
+		spelled, sensitivities = append(spelled, w.value), append(sensitivities, reduced.sensitivities[p])
+		if w.pair() {
+			spelled, sensitivities = append(spelled, cmplx.Conj(w.value)), append(sensitivities, reduced.sensitivities[p])
+		}
+	}
+	for i, j := range matchPoles(t.asked, spelled) {
+		placement.PoleSensitivity[i] = sensitivities[j]
+		placement.PoleError[i] = math.Sqrt(float64(len(spelled))) * machineEpsilon * norm * sensitivities[j]
+	}
 }
 
 // repeatsTooOften tells whether a wanted pole stands more often in the list

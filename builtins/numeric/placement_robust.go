@@ -131,17 +131,74 @@ func (s *ascent) best(ctx context.Context, seed int64) (*reducedGain, error) {
 		if err := s.climb(ctx); err != nil {
 			return nil, err
 		}
+		s.orthonormalizeRepeated()
 		values, err := singularValues(mat.NewDense(s.n, s.n, s.x))
 		if err != nil {
 			return nil, err
 		}
-		if condition := values[0] / values[s.n-1]; condition < lowest {
+		if condition := values[0] / values[s.n-1]; condition < lowest && s.invert() {
 			lowest = condition
 			found = &reducedGain{method: "several inputs: coordinate ascent on |det X| over the eigenvectors (Kautsky, Nichols & Van Dooren 1985; Tits & Yang 1996)",
-				x: append([]float64(nil), s.x...), inverse: append([]float64(nil), s.inverse...), order: s.wanted}
+				x: append([]float64(nil), s.x...), condition: condition, sensitivities: s.sensitivities(), order: s.wanted}
 		}
 	}
 	return found, nil
+}
+
+// orthonormalizeRepeated makes the eigenvectors of equal poles orthonormal:
+// any basis of their space serves the gain, and this one shows κ as it is.
+func (s *ascent) orthonormalizeRepeated() {
+	n := s.n
+	column := func(at int, pair bool) []complex128 {
+		v := make([]complex128, n)
+		for i := range v {
+			v[i] = complex(s.x[i*n+at], 0)
+			if pair {
+				v[i] = complex(s.x[i*n+at], s.x[i*n+at+1])
+			}
+		}
+		normalizeComplex(v)
+		return v
+	}
+	at := 0
+	before := make(map[complex128][][]complex128)
+	for _, w := range s.wanted {
+		v := column(at, w.pair())
+		same := before[w.value]
+		for pass := 0; pass < 2 && len(same) > 0; pass++ {
+			for _, u := range same {
+				f := innerProduct(u, v)
+				for i, x := range u {
+					v[i] -= f * x
+				}
+			}
+			normalizeComplex(v)
+		}
+		before[w.value] = append(same, v)
+		if len(same) > 0 {
+			for i, x := range v {
+				s.x[i*n+at] = real(x)
+				if w.pair() {
+					s.x[i*n+at], s.x[i*n+at+1] = math.Sqrt2*real(x), math.Sqrt2*imag(x)
+				}
+			}
+		}
+		at += w.count()
+	}
+}
+
+// sensitivities are ‖y‖·‖x‖ for each entry of wanted, with yᴴx = 1.
+func (s *ascent) sensitivities() []float64 {
+	n, at := s.n, 0
+	out := make([]float64, len(s.wanted))
+	for p, w := range s.wanted {
+		out[p] = blocksNorm(s.inverse[at*n:(at+1)*n]) * columnLength(s.x, n, n, at)
+		if w.pair() { // x = (c₁ + i·c₂)/√2 and yᴴ = (r₁ − i·r₂)/√2
+			out[p] = blocksNorm(s.inverse[at*n:(at+2)*n]) / 2 * math.Hypot(columnLength(s.x, n, n, at), columnLength(s.x, n, n, at+1))
+		}
+		at += w.count()
+	}
+	return out
 }
 
 // greedyStart takes for each pole the vector that stands out most from those

@@ -36,16 +36,20 @@ type StaircaseForm struct {
 	Certificate  Certificate
 }
 
-// staircaseThreshold is the default threshold factor: rounding in the
-// orthogonal transformations leaves a few ε·‖[A B]‖ a step, and errors of
-// independent steps add like a square root; ten times n + m is on the safe side.
+// thresholdFactor sets the default threshold. Rounding in the orthogonal
+// transformations alone leaves a few ε·‖[A B]‖; what takes the factor is the
+// rounding of the data to binary64, which a skew choice of states multiplies by hundreds
+// (seen on exact examples after a change of units).
+const thresholdFactor = 1000
+
+// staircaseThreshold is the default threshold for n states and m inputs.
 func staircaseThreshold(n, m int, norm float64) float64 {
-	return 10 * float64(n+m) * machineEpsilon * norm
+	return thresholdFactor * float64(n+m) * machineEpsilon * norm
 }
 
 // Staircase brings (a, b), n×n and n×m, to reachability staircase form by an
 // orthogonal T: no powers of A are formed. Singular values up to
-// tol·‖[A B]‖_F count as zero; tol ≤ 0 means 10·(n+m)·ε. The pair is taken as it
+// tol·‖[A B]‖_F count as zero; tol ≤ 0 means 1000·(n+m)·ε. The pair is taken as it
 // stands; Reachability balances first. b may be nil (no inputs). It errs when
 // shapes do not fit or an entry is not finite.
 //

@@ -29,7 +29,7 @@ type Split struct {
 
 // KalmanSplit divides the system (a, b, c), n×n, n×m, p×n, into its four parts.
 // States, inputs and outputs are balanced first by powers of two; each rank is
-// decided on a staircase form with the threshold 10·(n+m+p)·ε·‖[A B; C 0]‖_F.
+// decided on a staircase form with the threshold 1000·(n+m+p)·ε·‖[A B; C 0]‖_F.
 // b or c may be nil. The poles come from diagonal blocks of one orthogonal
 // transformation; T, which makes the decoupling visible, is as skew as the
 // reached and the unseen subspace are close, and the certificate's condition is
@@ -52,7 +52,7 @@ func KalmanSplit(a, b, c *mat.Dense) (*Split, error) {
 		return &Split{T: &mat.Dense{}, Inverse: &mat.Dense{}, A: &mat.Dense{}, B: &mat.Dense{}, C: &mat.Dense{},
 			Above: math.Inf(1), Certificate: Certificate{Method: "empty", Digits: mostDigits}}, nil
 	}
-	s := stateSpace{n: n, m: m, p: p, a: flatCopy(a), b: flatCopy(b), c: flatCopy(c)}
+	s := stateSpace{n: n, m: m, p: p, a: flatCopy(a), b: flatCopy(b), c: flatCopy(c), d: make([]float64, p*m)}
 	scale := s.balanced()
 	bases, err := s.splitBases()
 	if err != nil {
