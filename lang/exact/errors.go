@@ -18,6 +18,8 @@ var (
 	ErrInconsistent = errors.New("the equations contradict each other: there is no solution")
 	// ErrZeroDivision says that a number, polynomial or rational function was divided by zero.
 	ErrZeroDivision = errors.New("division by zero")
+	// ErrNegativePower says that a polynomial was raised to a negative power.
+	ErrNegativePower = errors.New("a negative power of a polynomial is not a polynomial")
 )
 
 // SizeError says that the shapes of two operands do not fit an operation.

@@ -298,3 +298,34 @@ func TestRationalFunctionIdentities(t *testing.T) {
 		}
 	}
 }
+
+func TestPowersAndComplexValuesOfRationalFunctions(t *testing.T) {
+	s := RationalOf(PolynomialOfIntegers(1, 0))
+	r, err := RationalOf(PolynomialOfIntegers(1)).Div(s.Add(RationalOf(PolynomialOfIntegers(1)))) // 1/(s + 1)
+	if err != nil || !r.IsStrictlyProper() || s.IsProper() {
+		t.Fatal(r, err)
+	}
+	back, err := r.Power(-2)
+	if err != nil || !back.Equal(RationalOf(PolynomialOfIntegers(1, 2, 1))) {
+		t.Errorf("r⁻² = %v %v", back, err)
+	}
+	if _, err := s.Sub(s).Power(-1); err != ErrZeroDivision {
+		t.Errorf("0⁻¹: %v", err)
+	}
+	if _, err := PolynomialOfIntegers(1, 1).Power(-1); err != ErrNegativePower {
+		t.Errorf("a negative power: %v", err)
+	}
+	re, im, err := r.EvalComplex(ratZero, ratOne) // 1/(1 + i) = (1 − i)/2
+	if err != nil || re.Cmp(big.NewRat(1, 2)) != 0 || im.Cmp(big.NewRat(-1, 2)) != 0 {
+		t.Errorf("r(i) = %v + %v·i, %v", re, im, err)
+	}
+	if _, _, err := r.EvalComplex(big.NewRat(-1, 1), ratZero); err != ErrZeroDivision {
+		t.Errorf("at the pole: %v", err)
+	}
+	if _, err := r.Eval(big.NewRat(-1, 1)); err != ErrZeroDivision {
+		t.Errorf("at the pole: %v", err)
+	}
+	if f := NewPolynomial(big.NewRat(1, 4), ratZero, big.NewRat(-3, 1)).Float64(); fmt.Sprint(f) != "[0.25 0 -3]" {
+		t.Errorf("as binary64: %v", f)
+	}
+}

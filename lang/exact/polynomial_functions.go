@@ -60,11 +60,11 @@ func (p Polynomial) Compose(q Polynomial) (Polynomial, error) {
 // LargestDegree bounds the degree that powers and compositions may reach.
 const LargestDegree = 10_000
 
-// Power gives pᵏ for k ≥ 0, or ErrTooLarge. p⁰ is 1.
+// Power gives pᵏ, or ErrNegativePower, or ErrTooLarge. p⁰ is 1.
 func (p Polynomial) Power(k int) (Polynomial, error) {
 	switch {
 	case k < 0:
-		return Polynomial{}, ErrZeroDivision
+		return Polynomial{}, ErrNegativePower
 	case p.Degree() == 0 && p.Lead().IsInt() && p.Lead().Num().IsInt64() && p.Lead().Num().Int64() == 1:
 		return p, nil
 	case p.IsZero() && k > 0:
