@@ -10,7 +10,6 @@ import (
 	"unicode/utf8"
 
 	"gainwright/lang/diag"
-	"gainwright/lang/syntax"
 )
 
 // largest design file that is read
@@ -110,19 +109,11 @@ func newDesign(name, text, folder string) (*design, *diag.Error) {
 	return &design{source: src, folder: folder}, nil
 }
 
-// parse reads the statements; the file holds those before an error.
-func (d *design) parse() (*syntax.File, *diag.Error) {
-	read := syntax.Parse
-	if syntax.IsNotebook(d.source.Name) {
-		read = syntax.ParseNotebook
-	}
-	file, err := read(d.source)
-	if err == nil {
-		return file, nil
-	}
+// asFailure is an error of reading with its place.
+func asFailure(err error, src *diag.Source) *diag.Error {
 	var failure *diag.Error
 	if !errors.As(err, &failure) {
-		failure = diag.New(diag.Syntax, "%s cannot be read: %v", d.source.Name, err)
+		failure = diag.New(diag.Syntax, "%s cannot be read: %v", src.Name, err)
 	}
-	return file, failure.In(d.source)
+	return failure.In(src)
 }

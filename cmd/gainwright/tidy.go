@@ -42,11 +42,10 @@ func (a *app) tidy(name string, only bool) *diag.Error {
 	if failure != nil {
 		return failure
 	}
-	file, failure := d.parse()
-	if failure != nil {
-		return failure
+	text, err := syntax.Tidy(d.source)
+	if err != nil {
+		return asFailure(err, d.source)
 	}
-	text := syntax.Tidy(file)
 	differs := text != d.source.Text
 	switch {
 	case only && differs:

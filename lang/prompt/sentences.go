@@ -166,7 +166,11 @@ func (t *talk) keep(name string) {
 		t.fail(diag.New(diag.File, "%s cannot be written: %v", name, cause(err)))
 		return
 	}
-	fmt.Fprintf(t.Out, "%s written, %d lines\n", name, strings.Count(text, "\n"))
+	lines := "1 line"
+	if n := strings.Count(text, "\n"); n != 1 {
+		lines = fmt.Sprintf("%d lines", n)
+	}
+	fmt.Fprintf(t.Out, "%s written, %s\n", name, lines)
 	for _, d := range doubled {
 		fmt.Fprintf(t.Out, "  %s was bound twice and used in between; a file binds a name once, so rename one of them there\n", d)
 	}

@@ -59,8 +59,12 @@ func (p *Printer) lines(e eval.Event) (lines []string, block bool) {
 	o := p.Options
 	switch {
 	case e.Shown != nil && !p.OnlyVerdicts:
+		if text, ok := e.Shown.Value.(value.Text); ok && e.Text == quoted(string(text)) {
+			// A text alone is a heading.
+			return wrapped(oneLine(string(text)), o.width()), true
+		}
 		l := layValue(e.Shown.Value, e.Shown.In, o)
-		lines = labelled(shownLabel(e.Text), l, o)
+		lines = labelled(oneLine(e.Text), l, o)
 		return p.tintNotes(lines), len(lines) > 1
 	case e.Bound != nil && p.Bindings:
 		lines = labelled(e.Bound.Name, layValue(e.Bound.Value, nil, o), o)
@@ -76,9 +80,6 @@ func (p *Printer) lines(e eval.Event) (lines []string, block bool) {
 	}
 	return nil, false
 }
-
-// shownLabel is the text of a shown expression; a bare literal needs none of it repeated.
-func shownLabel(text string) string { return oneLine(text) }
 
 // verdict starts a line with its word; only the word is coloured.
 func (p *Printer) verdict(word, text string, c colour) []string {
@@ -108,6 +109,11 @@ func (p *Printer) requirement(e eval.Event, r *eval.Requirement) []string {
 		sides = p.sides(r)
 	}
 	switch {
+	case sides != "" && source == Inline(r.Left, p.Options)+" "+r.Op+" "+Inline(r.Right, p.Options):
+		// Two numbers compared say it all themselves.
+		if r.Why != "" {
+			below = append(below, source)
+		}
 	case r.Why != "" && sides != "":
 		below = append(below, source+": "+sides)
 	case r.Why != "":
@@ -216,7 +222,7 @@ func claimEntry(e eval.ClaimEntry) string {
 	if math.IsInf(e.Units, 0) {
 		return text + "; equality was printed"
 	}
-	return text + fmt.Sprintf("; off by %.3g units of its last place", e.Units)
+	return text + "; off by " + unitsText(e.Units) + " of its last place"
 }
 
 // claimDigits shows two digits more of the computed value than were printed.
@@ -275,4 +281,11 @@ func (p *Printer) tintNotes(lines []string) []string {
 // Failure writes an error that belongs to no run, such as a missing file.
 func (p *Printer) Failure(err *diag.Error) {
 	p.Event(eval.Event{Error: err})
+}
+
+func unitsText(units float64) string {
+	if units == 1 {
+		return "1 unit"
+	}
+	return fmt.Sprintf("%.3g units", units)
 }
