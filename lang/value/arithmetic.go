@@ -58,6 +58,7 @@ func dispatch(name string, a, b Value, pick func(*operations) func(a, b Value) (
 	if a == nil || b == nil {
 		return nil, diag.New(diag.Internal, "%s met a value that is missing", name)
 	}
+	a, b = Force(a), Force(b)
 	joined := joins[domains[a.Kind()]][domains[b.Kind()]]
 	if joined == noDomain {
 		return nil, undefined(name, a, b)
@@ -97,6 +98,7 @@ func Power(a, b Value) (Value, error) {
 		}
 		return nil, undefined("a power", a, b)
 	}
+	a, b = Force(a), Force(b)
 	v, err := table[domains[a.Kind()]].power(a, b)
 	if err != nil {
 		return nil, err
@@ -106,7 +108,7 @@ func Power(a, b Value) (Value, error) {
 
 // Negate gives −a.
 func Negate(a Value) (Value, error) {
-	switch x := a.(type) {
+	switch x := Force(a).(type) {
 	case Number:
 		return negateNumber(x), nil
 	case Complex:
@@ -124,7 +126,7 @@ func Negate(a Value) (Value, error) {
 	case *List:
 		return negateList(x)
 	case *Matrix, *Gain:
-		m, err := asMatrix(a)
+		m, err := asMatrix(x)
 		if err != nil {
 			return nil, err
 		}
@@ -163,9 +165,9 @@ func named(m *Matrix, rows, columns []string) *Matrix {
 
 // Transpose gives aᵀ: of complex matrices without conjugation; of a plant the dual system.
 func Transpose(a Value) (Value, error) {
-	switch x := a.(type) {
+	switch x := Force(a).(type) {
 	case Number, Complex, Quantity, *Polynomial:
-		return a, nil
+		return x, nil
 	case *Transfer:
 		return transposeTransfer(x), nil
 	case *Plant:
@@ -173,7 +175,7 @@ func Transpose(a Value) (Value, error) {
 	case *Model:
 		return transposePlant(x.Plant), nil
 	case *Matrix, *Gain, *List:
-		m, err := asMatrix(a)
+		m, err := asMatrix(x)
 		if err != nil {
 			return nil, err
 		}
@@ -187,6 +189,7 @@ func PlusMinus(a, b Value) (Value, error) {
 	if domains[a.Kind()] != scalarDomain || domains[b.Kind()] != scalarDomain {
 		return nil, undefined("±", a, b)
 	}
+	a, b = Force(a), Force(b)
 	im, ok := b.(Complex)
 	if !ok {
 		return nil, diag.New(diag.Type, "the right side of ± is real; a tolerance belongs to `given`").
@@ -298,7 +301,7 @@ func exponentText(b Value) string {
 
 // realScalar takes a number or a dimensionless quantity.
 func realScalar(v Value) (Number, error) {
-	switch x := v.(type) {
+	switch x := Force(v).(type) {
 	case Number:
 		return x, nil
 	case Quantity:

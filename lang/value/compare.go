@@ -13,6 +13,7 @@ func Equal(a, b Value) (Boolean, error) {
 	if a == nil || b == nil {
 		return false, diag.New(diag.Internal, "a comparison met a value that is missing")
 	}
+	a, b = Force(a), Force(b)
 	if joins[domains[a.Kind()]][domains[b.Kind()]] == noDomain {
 		switch x := a.(type) {
 		case Text:
@@ -68,6 +69,7 @@ func ordered(a, b Value) (x, y Number, err error) {
 	if a == nil || b == nil {
 		return x, y, diag.New(diag.Internal, "a comparison met a value that is missing")
 	}
+	a, b = Force(a), Force(b)
 	if isScalar(a) && isScalar(b) {
 		if a.Kind() == KComplex || b.Kind() == KComplex {
 			return x, y, diag.New(diag.Type, "order is not defined for complex numbers: %s is compared with %s", Describe(a), Describe(b)).

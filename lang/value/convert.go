@@ -17,6 +17,7 @@ const largestConversion = 100
 // constant, a transfer function realised (of least order for exact data; in z without a
 // sample time, 1 s is taken).
 func ToPlant(v Value) (*Plant, error) {
+	v = Force(v)
 	switch x := v.(type) {
 	case *Plant:
 		return x, nil
@@ -49,6 +50,7 @@ func ToPlant(v Value) (*Plant, error) {
 // Floating matrices count at their binary64 values; the coefficients are computed exactly
 // and rounded, with the error that the entries' own uncertainty brings.
 func ToTransfer(v Value) (*Transfer, error) {
+	v = Force(v)
 	switch x := v.(type) {
 	case *Plant:
 		return plantTransfer(x)

@@ -16,12 +16,24 @@ func Later(compute func() Value) *Deferred { return &Deferred{compute: compute} 
 // Kind is the kind of the value behind it.
 func (d *Deferred) Kind() Kind { return Force(d).Kind() }
 
-// Force works out a deferred value; every other value is itself.
+// Fractions marks a value to be shown as fractions; in every other use it is the value.
+type Fractions struct{ Value Value }
+
+// AsFraction marks a value to be shown as fractions.
+func AsFraction(v Value) Value { return &Fractions{Force(v)} }
+
+// Kind is the kind of the value that is shown so.
+func (f *Fractions) Kind() Kind { return f.Value.Kind() }
+
+// Force works out a deferred value and takes off the mark of how to show one; every
+// other value is itself.
 func Force(v Value) Value {
-	d, ok := v.(*Deferred)
-	if !ok {
-		return v
+	switch x := v.(type) {
+	case *Deferred:
+		x.once.Do(func() { x.value = x.compute() })
+		return x.value
+	case *Fractions:
+		return x.Value
 	}
-	d.once.Do(func() { d.value = d.compute() })
-	return d.value
+	return v
 }

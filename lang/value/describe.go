@@ -8,7 +8,7 @@ import (
 
 // Describe says what a value is in the users' words, with its size: "a 2×3 matrix".
 func Describe(v Value) string {
-	switch x := v.(type) {
+	switch x := Force(v).(type) {
 	case nil:
 		return "nothing"
 	case Quantity:

@@ -195,7 +195,7 @@ func powerOfTen(x *big.Rat) (int, bool) {
 
 // Abs gives the absolute value; a quantity keeps its unit.
 func Abs(v Value) (Value, error) {
-	if q, ok := v.(Quantity); ok {
+	if q, ok := Force(v).(Quantity); ok {
 		return Quantity{absolute(q.Magnitude), q.Unit}, nil
 	}
 	arg, err := plainArgument("abs", v)
@@ -216,7 +216,7 @@ func Abs(v Value) (Value, error) {
 
 // Sign gives −1, 0 or 1 of a real number or a quantity.
 func Sign(v Value) (Value, error) {
-	if q, ok := v.(Quantity); ok {
+	if q, ok := Force(v).(Quantity); ok {
 		return Int(q.Magnitude.Sign()), nil
 	}
 	arg, err := plainArgument("sign", v)
@@ -236,7 +236,7 @@ func Real(v Value) (Value, error) { return complexPart("real", v, Complex.RealPa
 func Imaginary(v Value) (Value, error) { return complexPart("imaginary", v, Complex.ImaginaryPart) }
 
 func complexPart(name string, v Value, part func(Complex) Number) (Value, error) {
-	switch x := v.(type) {
+	switch x := Force(v).(type) {
 	case *List:
 		return mapList(x, func(v Value) (Value, error) { return complexPart(name, v, part) })
 	case *Matrix:
@@ -283,7 +283,7 @@ func mapList(l *List, f func(Value) (Value, error)) (Value, error) {
 
 // Conjugate gives the complex conjugate of a number, a matrix or each item of a list.
 func Conjugate(v Value) (Value, error) {
-	switch x := v.(type) {
+	switch x := Force(v).(type) {
 	case *List:
 		return mapList(x, Conjugate)
 	case Quantity:

@@ -25,7 +25,11 @@ func Index(v Value, subscripts []Subscript) (result Value, at int, err error) {
 		if len(subscripts) == n {
 			return nil
 		}
-		return diag.New(diag.Shape, "%s takes %s, as in %s; here %d", Describe(v), count(n, "index"), form, len(subscripts))
+		many := "one index"
+		if n == 2 {
+			many = "two indices"
+		}
+		return diag.New(diag.Shape, "%s takes %s, as in %s; there are %d here", Describe(v), many, form, len(subscripts))
 	}
 	switch x := Force(v).(type) {
 	case *List:

@@ -10,6 +10,7 @@ func Collect(items []Value) (Value, error) {
 	rows := make([][]Entry, 0, len(items))
 	out := make([]Value, 0, len(items))
 	for _, item := range items {
+		item = Force(item)
 		l, isList := item.(*List)
 		if isList && l.Pair {
 			out = append(out, l.Items...)
@@ -43,7 +44,7 @@ func allScalars(items []Value) bool {
 // Elements gives what `for each` runs over: the items of a list, the entries of a row or
 // a column, the rows of another matrix.
 func Elements(v Value) ([]Value, error) {
-	switch x := v.(type) {
+	switch x := Force(v).(type) {
 	case *List:
 		return x.Items, nil
 	case *Gain:
@@ -85,8 +86,9 @@ type Entry struct {
 func MatrixLiteral(rows [][]Entry) (v Value, at [2]int, err error) {
 	blocks, functions := false, false
 	for i, row := range rows {
-		for j, e := range row {
-			switch x := e.Value.(type) {
+		for j := range row {
+			row[j].Value = Force(row[j].Value)
+			switch x := row[j].Value.(type) {
 			case *List:
 				if x.Pair {
 					return nil, [2]int{i, j}, diag.New(diag.Type, "a conjugate pair cannot stand in a row of a matrix").
@@ -108,8 +110,8 @@ func MatrixLiteral(rows [][]Entry) (v Value, at [2]int, err error) {
 	}
 	for i, row := range rows {
 		if len(row) != len(rows[0]) {
-			return nil, [2]int{i, -1}, diag.New(diag.Shape, "the rows of a matrix have unequal lengths: row 1 has %s, row %d has %d",
-				count(len(rows[0]), "entry"), i+1, len(row))
+			return nil, [2]int{i, -1}, diag.New(diag.Shape, "the rows of a matrix have unequal lengths: row 1 has %d, row %d has %d",
+				len(rows[0]), i+1, len(row))
 		}
 	}
 	switch {
@@ -166,6 +168,7 @@ func blockSizes(rows [][]Entry, size func(Value) (r, c int)) (heights, widths []
 	for k := range widths {
 		widths[k] = -1
 	}
+	single := true
 	set := func(known *int, n int) bool {
 		if *known < 0 {
 			*known = n
@@ -178,6 +181,7 @@ func blockSizes(rows [][]Entry, size func(Value) (r, c int)) (heights, widths []
 				continue
 			}
 			r, c := size(e.Value)
+			single = single && r == 1 && c == 1
 			if !set(&heights[i], r) {
 				return nil, nil, [2]int{i, j}, diag.New(diag.Shape, "this block is %s, but the blocks before it in row %d have %s",
 					sizeText(r, c), i+1, count(heights[i], "row"))
@@ -186,6 +190,14 @@ func blockSizes(rows [][]Entry, size func(Value) (r, c int)) (heights, widths []
 				return nil, nil, [2]int{i, j}, diag.New(diag.Shape, "this block is %s, but the blocks above it in column %d have %s",
 					sizeText(r, c), j+1, count(widths[j], "column"))
 			}
+		}
+	}
+	if single { // nothing is larger than a number, so 0 and 1 are numbers
+		for k := range heights {
+			heights[k] = 1
+		}
+		for k := range widths {
+			widths[k] = 1
 		}
 	}
 	for changed := true; changed; { // an identity carries a height to a width and back
@@ -200,13 +212,15 @@ func blockSizes(rows [][]Entry, size func(Value) (r, c int)) (heights, widths []
 			}
 		}
 	}
-	return heights, widths, at, checkBlockSizes(rows, heights, widths, &at)
+	at, err = checkBlockSizes(rows, heights, widths)
+	return heights, widths, at, err
 }
 
-func checkBlockSizes(rows [][]Entry, heights, widths []int, at *[2]int) error {
+// checkBlockSizes refuses tokens whose block has no size, or an identity that is not square.
+func checkBlockSizes(rows [][]Entry, heights, widths []int) (at [2]int, err error) {
 	for i, row := range rows {
 		for j, e := range row {
-			*at = [2]int{i, j}
+			at = [2]int{i, j}
 			token := "0"
 			if e.One {
 				token = "1"
@@ -217,15 +231,14 @@ func checkBlockSizes(rows [][]Entry, heights, widths []int, at *[2]int) error {
 				if heights[i] >= 0 {
 					side = "width"
 				}
-				return diag.New(diag.Shape, "the %s of this block %s is not fixed by the other blocks", side, token).
+				return at, diag.New(diag.Shape, "the %s of this block %s is not fixed by the other blocks", side, token).
 					WithHelp("write filled(0, rows: r, columns: c) or identity(n) where the size is not clear")
 			case e.One && heights[i] != widths[j]:
-				return diag.New(diag.Shape, "1 stands for an identity block, but this block is %s", sizeText(heights[i], widths[j]))
+				return at, diag.New(diag.Shape, "1 stands for an identity block, but this block is %s", sizeText(heights[i], widths[j]))
 			}
 		}
 	}
-	*at = [2]int{}
-	return nil
+	return [2]int{}, nil
 }
 
 func blockLiteral(rows [][]Entry) (Value, [2]int, error) {

@@ -3,7 +3,6 @@ package value
 import (
 	"errors"
 	"math"
-	"math/big"
 
 	"gonum.org/v1/gonum/blas"
 	"gonum.org/v1/gonum/blas/blas64"
@@ -366,8 +365,3 @@ func scaleExact(m *Matrix, factor Complex) (*Matrix, error) {
 
 // IdentityMatrix gives the exact n×n identity.
 func IdentityMatrix(n int) *Matrix { return ExactMatrix(exact.Identity(n)) }
-
-// scalarMatrix gives factor·identity of size n.
-func scalarMatrix(factor *big.Rat, n int) *Matrix {
-	return ExactMatrix(exact.Identity(n).Scale(factor))
-}

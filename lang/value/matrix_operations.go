@@ -9,7 +9,7 @@ import (
 
 // asMatrix takes a matrix, the values of a gain, a scalar (1×1) or a list of scalars (a column).
 func asMatrix(v Value) (*Matrix, error) {
-	switch x := v.(type) {
+	switch x := Force(v).(type) {
 	case *Matrix:
 		return x, nil
 	case *Gain:
@@ -17,7 +17,7 @@ func asMatrix(v Value) (*Matrix, error) {
 	case *List:
 		return listColumn(x)
 	case Number, Complex, Quantity:
-		return scalarsMatrix(1, 1, []Value{v})
+		return scalarsMatrix(1, 1, []Value{x})
 	}
 	return nil, diag.New(diag.Type, "a matrix is needed; this is %s", Describe(v))
 }

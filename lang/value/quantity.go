@@ -213,7 +213,7 @@ func plainRate(u Unit) Unit {
 
 // In expresses a number, a quantity or a list of them in a unit, for display.
 func In(v Value, u Unit) (Value, error) {
-	switch x := v.(type) {
+	switch x := Force(v).(type) {
 	case Number:
 		if !u.Dim.IsPlain() {
 			return nil, diag.New(diag.Unit, "a plain number cannot be shown in %s", unitName(u))

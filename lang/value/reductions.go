@@ -126,7 +126,7 @@ func Round(v Value, decimals int) (Value, error) {
 	if decimals > mostDecimals || decimals < -mostDecimals {
 		return nil, diag.New(diag.Limit, "round takes at most %d decimals", mostDecimals)
 	}
-	if q, ok := v.(Quantity); ok {
+	if q, ok := Force(v).(Quantity); ok {
 		out, err := Round(q.Magnitude, decimals)
 		if err != nil {
 			return nil, err

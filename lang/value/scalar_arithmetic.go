@@ -2,7 +2,7 @@ package value
 
 // asComplex takes any scalar; a quantity counts as its SI number, since complex numbers carry no unit.
 func asComplex(v Value) (Complex, error) {
-	switch x := v.(type) {
+	switch x := Force(v).(type) {
 	case Complex:
 		return x, nil
 	case Quantity:

@@ -169,3 +169,30 @@ func TestEveryShapeMeetsEveryKind(t *testing.T) {
 		}
 	}
 }
+
+// A value that is to be shown as fractions, or was deferred, counts as the value it is.
+func TestMarkedValuesAreValues(t *testing.T) {
+	for kind, v := range oneOfEach(t) {
+		for name, marked := range map[string]Value{"fractions": AsFraction(v), "deferred": Later(func() Value { return v })} {
+			for operation, f := range map[string]func(v Value) (Value, error){
+				"add":      func(v Value) (Value, error) { return Add(v, v) },
+				"multiply": func(v Value) (Value, error) { return Multiply(v, rat("2")) },
+				"divide":   func(v Value) (Value, error) { return Divide(rat("2"), v) },
+				"power":    func(v Value) (Value, error) { return Power(v, rat("2")) },
+				"pair":     func(v Value) (Value, error) { return PlusMinus(v, v) },
+				"equal":    func(v Value) (Value, error) { b, err := Equal(v, v); return b, err },
+				"less":     func(v Value) (Value, error) { b, err := Compare("<", v, v); return b, err },
+				"negate":   Negate, "transpose": Transpose, "abs": Abs, "real": Real, "floating": Floating, "sin": Sin, "sqrt": Sqrt,
+				"collect": func(v Value) (Value, error) { return Collect([]Value{v, v}) },
+				"row":     func(v Value) (Value, error) { m, _, err := MatrixLiteral([][]Entry{{{Value: v}}}); return m, err },
+				"plant":   func(v Value) (Value, error) { p, err := ToPlant(v); return p, err },
+			} {
+				want, err1 := f(v)
+				got, err2 := f(marked)
+				if (err1 == nil) != (err2 == nil) || err1 == nil && (got.Kind() != want.Kind() || Describe(got) != Describe(want)) {
+					t.Errorf("%s of %s %s: %v (%v), want %v (%v)", operation, name, kind, got, err2, want, err1)
+				}
+			}
+		}
+	}
+}

@@ -18,7 +18,6 @@ type unitDefinition struct {
 	prefixes bool
 	hertz    bool
 	coherent []UnitFactor // the coherent unit that arithmetic turns it into
-	name     string
 }
 
 // The SI units and the units accepted beside them: BIPM, The International System of
