@@ -165,12 +165,12 @@ func (s *Session) callBuiltin(f *frame, b *value.Builtin, site *callSite, args [
 	held := f.task.held
 	v, failure := protected(b, call)
 	if failure != nil {
-		if f.task.stopped.Load() {
+		if f.task.ctx.Err() != nil {
 			return nil, f.task.stopError().At(site.callee)
 		}
 		return nil, pointed(failure, b.Name, spans, site)
 	}
-	if f.task.stopped.Load() {
+	if f.task.ctx.Err() != nil {
 		return nil, f.task.stopError().At(site.callee)
 	}
 	f.task.held = held
@@ -252,6 +252,16 @@ func choose(b *value.Builtin, first value.Value) ([]value.Param, bool) {
 		}
 	}
 	return b.Bare, true
+}
+
+// named tells whether an argument is given by name.
+func (c *callSite) named() bool {
+	for _, a := range c.args {
+		if a.name != "" {
+			return true
+		}
+	}
+	return false
 }
 
 // argument gives the i-th argument's place; calls made by the program itself have none.

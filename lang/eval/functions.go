@@ -41,27 +41,16 @@ func (s *Session) compileDefinition(d *definition) *diag.Error {
 }
 
 func (s *Session) callDefined(f *frame, fn *value.Function, d *definition, site *callSite, args []value.Value) (value.Value, *diag.Error) {
-	params := make([]value.Param, len(d.params))
-	for i, name := range d.params {
-		params[i] = value.Param{Name: name}
-	}
-	placed, err := place(fn.Name, params, site, args)
-	if err != nil {
-		return nil, err
-	}
 	t := f.task
 	if t.depth >= s.limits.Depth {
 		return nil, diag.New(diag.Limit, "%s is called more than %d deep", fn.Name, s.limits.Depth).At(site.callee).
 			WithHelp("does it call itself without an end?")
 	}
-	inner := &frame{task: t, overlay: f.overlay, locals: make([]value.Value, len(d.params))}
-	for _, p := range placed {
-		for i := range params {
-			if p.param == &params[i] {
-				inner.locals[i] = p.value
-			}
-		}
+	locals, err := d.arguments(fn.Name, site, args)
+	if err != nil {
+		return nil, err
 	}
+	inner := &frame{task: t, overlay: f.overlay, locals: locals}
 	t.depth++
 	held := t.held
 	v, err := d.code.value(inner)
@@ -71,6 +60,30 @@ func (s *Session) callDefined(f *frame, fn *value.Function, d *definition, site 
 	}
 	t.keep(held, v)
 	return v, nil
+}
+
+// arguments puts the arguments of a call in the order of the parameters.
+func (d *definition) arguments(name string, site *callSite, args []value.Value) ([]value.Value, *diag.Error) {
+	if !site.named() && len(args) == len(d.params) {
+		return args, nil
+	}
+	params := make([]value.Param, len(d.params))
+	for i, p := range d.params {
+		params[i] = value.Param{Name: p}
+	}
+	placed, err := place(name, params, site, args)
+	if err != nil {
+		return nil, err
+	}
+	locals := make([]value.Value, len(params))
+	for _, p := range placed {
+		for i := range params {
+			if p.param == &params[i] {
+				locals[i] = p.value
+			}
+		}
+	}
+	return locals, nil
 }
 
 // fromInside explains an error that arose in a function's body. In the library, whose

@@ -3,6 +3,7 @@ package eval
 import (
 	"errors"
 	"fmt"
+	"sync"
 
 	"github.com/expr-lang/expr/ast"
 	"github.com/expr-lang/expr/builtin"
@@ -63,10 +64,14 @@ func internal(doing string, cause error) *diag.Error {
 	return e
 }
 
+// machines are reused, because each grows a stack.
+var machines = sync.Pool{New: func() any { return new(vm.VM) }}
+
 // run evaluates the program. The result is a value.Value, or a bool of a condition.
 func (p *program) run(f *frame) (any, *diag.Error) {
-	var machine vm.VM
-	return p.runOn(&machine, f)
+	machine := machines.Get().(*vm.VM)
+	defer machines.Put(machine)
+	return p.runOn(machine, f)
 }
 
 // runOn evaluates on a machine that a loop reuses.

@@ -3,7 +3,6 @@ package eval
 import (
 	"context"
 	"errors"
-	"sync/atomic"
 	"time"
 
 	"gainwright/lang/diag"
@@ -53,42 +52,27 @@ func (l Limits) filled() Limits {
 type task struct {
 	session *Session
 	ctx     context.Context
-	stopped atomic.Bool
 	steps   int64
 	held    int64 // bytes of the results alive at this point, an upper estimate
 	depth   int
 	note    func(string)
-	release []func() bool
+	close   func()
 }
 
 // newTask prepares a statement; close must be called when it ends.
 func (s *Session) newTask(ctx context.Context, note func(string)) *task {
-	t := &task{session: s, note: note}
-	t.ctx = ctx
-	cancel := func() bool { return true }
+	t := &task{session: s, note: note, ctx: ctx, close: func() {}}
 	if s.limits.Time > 0 {
-		limited, stop := context.WithTimeoutCause(ctx, s.limits.Time, errTooLong)
-		t.ctx = limited
-		cancel = func() bool { stop(); return true }
+		t.ctx, t.close = context.WithTimeoutCause(ctx, s.limits.Time, errTooLong)
 	}
-	if t.ctx.Done() != nil {
-		t.release = append(t.release, context.AfterFunc(t.ctx, func() { t.stopped.Store(true) }))
-	}
-	t.release = append(t.release, cancel)
 	return t
-}
-
-func (t *task) close() {
-	for _, f := range t.release {
-		f()
-	}
 }
 
 var errTooLong = errors.New("the statement ran longer than it may")
 
 // step is called by every operation: it counts, and ends the statement when it was stopped.
 func (t *task) step() *diag.Error {
-	if t.stopped.Load() {
+	if t.ctx.Err() != nil {
 		return t.stopError()
 	}
 	t.steps++
