@@ -16,7 +16,7 @@ func TestBilinearIsTheSubstitution(t *testing.T) {
 		n, m, p := 1+random.IntN(4), 1+random.IntN(2), 1+random.IntN(2)
 		a, b := gradedProblem(random, n), randomDense(random, n, m, 1)
 		c, d := randomDense(random, p, n, 1), randomDense(random, p, m, 1)
-		period := math.Pow(10, -4*random.Float64()) / mat.Norm(a, 1)
+		period := math.Pow(10, -4*random.Float64()) / math.Max(mat.Norm(a, 1), 1e-3)
 		exactAt, alpha := 0.0, 2/period
 		if trial%2 == 1 {
 			exactAt = 0.3 / period

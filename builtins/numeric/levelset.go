@@ -33,8 +33,8 @@ const mostLevels = 60
 //
 // Level sets: a level γ is passed where the Hamiltonian matrix of γ has
 // eigenvalues on the imaginary axis (S. Boyd, V. Balakrishnan, Syst. Control Lett.
-// 15, 1990; N. A. Bruinsma, M. Steinbuch, ibid. 14, 1990). Eigenvalues merely near
-// the axis are taken as candidates too, since each is judged by the gain there.
+// 15, 1990; N. A. Bruinsma, M. Steinbuch, ibid. 14, 1990). Rounding moves them off
+// it, so all eigenvalues are taken as candidates and judged by the gain there.
 func LargestGain(ctx context.Context, a, b, c, d *mat.Dense, period float64) (*GainPeak, error) {
 	n, m, p, err := plantShapes(a, b, c, d)
 	if err != nil {
@@ -157,10 +157,13 @@ func (s *gainSearch) gain(w float64) float64 {
 	return s.svd.Values(nil)[0]
 }
 
-func (s *gainSearch) try(w float64) {
-	if g := s.gain(w); g > s.low {
+// try keeps the gain at w if it is the best so far, and returns it.
+func (s *gainSearch) try(w float64) float64 {
+	g := s.gain(w)
+	if g > s.low {
 		s.low, s.at = g, w
 	}
+	return g
 }
 
 // climb raises low until no frequency passes low·(1 + 2·levelStep).
@@ -189,7 +192,6 @@ func (s *gainSearch) climb(ctx context.Context) error {
 		if err != nil {
 			return err
 		}
-		before := s.low
 		for i, w := range candidates {
 			s.try(w)
 			if i > 0 {
@@ -197,11 +199,14 @@ func (s *gainSearch) climb(ctx context.Context) error {
 				s.try(math.Sqrt(w * candidates[i-1]))
 			}
 		}
+		// The interval beyond the last crossing has no middle; when the level is the
+		// gain at infinity, its other end is lost in rounding.
+		for factor := 1.5; factor < 1e4; factor *= factor {
+			s.try(factor * candidates[len(candidates)-1])
+		}
+		s.ascend()
 		if s.low <= level {
-			s.high = math.Max(level, s.low)
-			if s.low > before {
-				s.high = s.low * (1 + 2*levelStep)
-			}
+			s.high = level
 			return nil
 		}
 	}
@@ -209,7 +214,7 @@ func (s *gainSearch) climb(ctx context.Context) error {
 }
 
 // crossings lists, in rising order, the frequencies near which a singular value
-// may equal the level: 0 and the eigenvalues on or near the imaginary axis of
+// may equal the level: 0 and the imaginary parts of the eigenvalues of
 // [[A + B·R⁻¹·Dᵀ·C, B·R⁻¹·Bᵀ], [−Cᵀ(I + D·R⁻¹·Dᵀ)·C, −(A + B·R⁻¹·Dᵀ·C)ᵀ]], R = γ²I − DᵀD, with B and C scaled by √γ.
 func (s *gainSearch) crossings(level float64) ([]float64, error) {
 	n, m := s.b.Dims()
@@ -257,15 +262,45 @@ func (s *gainSearch) crossings(level float64) ([]float64, error) {
 	if err != nil {
 		return nil, err
 	}
-	norm := mat.Norm(hamiltonian, 1)
 	frequencies := []float64{0}
 	for _, lambda := range eigenvalues {
-		if imag(lambda) > 0 && math.Abs(real(lambda)) <= 1e-3*imag(lambda)+1e-8*norm {
+		if imag(lambda) > 0 {
 			frequencies = append(frequencies, imag(lambda))
 		}
 	}
 	slices.Sort(frequencies)
 	return frequencies, nil
+}
+
+// ascend climbs from the best frequency by golden sections in ever narrower
+// neighbourhoods, so that the next level starts at the top of a peak that the
+// candidates only touched.
+func (s *gainSearch) ascend() {
+	if s.at == 0 || math.IsInf(s.at, 1) {
+		return
+	}
+	for _, reach := range []float64{0.1, 1e-2, 1e-3, 1e-4} {
+		s.golden(s.at*(1-reach), s.at*(1+reach), 12)
+	}
+}
+
+// golden narrows [lo, hi] towards a maximum of the gain and returns its middle.
+func (s *gainSearch) golden(lo, hi float64, rounds int) float64 {
+	ratio := (math.Sqrt(5) - 1) / 2
+	x, y := hi-ratio*(hi-lo), lo+ratio*(hi-lo)
+	gx, gy := s.try(x), s.try(y)
+	for range rounds {
+		if gx > gy {
+			hi, y, gy = y, x, gx
+			x = hi - ratio*(hi-lo)
+			gx = s.try(x)
+		} else {
+			lo, x, gx = x, y, gy
+			y = lo + ratio*(hi-lo)
+			gy = s.try(y)
+		}
+	}
+	return (lo + hi) / 2
 }
 
 // result sharpens the frequency and states the digits.
@@ -292,30 +327,14 @@ func (s *gainSearch) result() (*GainPeak, error) {
 	return peak, nil
 }
 
-// sharpen moves the frequency to the top of its peak by golden sections; the
-// gain changes only within the bracket.
+// sharpen moves the frequency to the middle of the flat top of its peak.
 func (s *gainSearch) sharpen() {
 	if s.at == 0 || math.IsInf(s.at, 1) || s.low == 0 {
 		return
 	}
-	lo, hi := s.at*(1-1e-4), s.at*(1+1e-4)
-	ratio := (math.Sqrt(5) - 1) / 2
-	x, y := hi-ratio*(hi-lo), lo+ratio*(hi-lo)
-	gx, gy := s.gain(x), s.gain(y)
-	for range 25 {
-		if gx > gy {
-			hi, y, gy = y, x, gx
-			x = hi - ratio*(hi-lo)
-			gx = s.gain(x)
-		} else {
-			lo, x, gx = x, y, gy
-			y = lo + ratio*(hi-lo)
-			gy = s.gain(y)
-		}
-	}
-	middle := (lo + hi) / 2
-	if g := s.gain(middle); g >= s.low*(1-4*machineEpsilon) {
-		s.low, s.at = math.Max(g, s.low), middle
+	middle := s.golden(s.at*(1-1e-4), s.at*(1+1e-4), 25)
+	if s.gain(middle) >= s.low*(1-4*machineEpsilon) {
+		s.at = middle
 	}
 }
 
@@ -355,14 +374,16 @@ func NoiseGain(ctx context.Context, a, b, c, d *mat.Dense, sampled bool) (float6
 	if err != nil {
 		return 0, Certificate{}, err
 	}
-	turned, _ := f.turned(b, c)
-	g, err := newGramianFactors(ctx, turned.a, turned.b, nil, sampled)
-	if err != nil {
-		return 0, Certificate{}, err
+	gain, difference := math.Hypot(direct, f.outputSize(c)), 0.0
+	for attempt := 1; attempt <= f.samples(); attempt++ {
+		turned, _ := f.turned(b, c, attempt)
+		g, err := newGramianFactors(ctx, turned.a, turned.b, nil, sampled)
+		if err != nil {
+			return 0, Certificate{}, err
+		}
+		difference = math.Max(difference, math.Abs(gain-math.Hypot(direct, g.outputSize(turned.c))))
 	}
-	first := math.Hypot(direct, f.outputSize(c))
-	second := math.Hypot(direct, g.outputSize(turned.c))
-	return first, f.certificate(math.Abs(first-second), first), nil
+	return gain, f.certificate(difference, gain), nil
 }
 
 // outputSize is the Frobenius norm of C̃·reach.

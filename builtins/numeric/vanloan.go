@@ -200,17 +200,19 @@ func integrated(n int, f, w []float64, steps int) (integral []float64, largest f
 	for i := range n {
 		transition[i*n+i], power[i*n+i] = 1, 1
 	}
-	// Terms shrink at least like 1/k!; entries that need a path of n couplings
-	// first appear at k = n, so n terms are always summed.
+	// Terms shrink at least like 1/k!. Entries differ widely in size in scaled
+	// coordinates and each must settle by itself; those that need a path of n
+	// couplings first appear at k = n, so n terms are always summed.
 	for k := 1; k <= n+40; k++ {
 		multiply(blas.NoTrans, blas.NoTrans, n, n, n, step/float64(k), power, n, f, n, 0, space, n)
 		power, space = space, power
 		multiply(blas.NoTrans, blas.NoTrans, n, n, n, step/float64(k+1), term, n, f, n, 0, space, n)
-		grown := addSymmetric(n, term, space, integral)
+		settled := addSymmetric(n, term, space, integral)
 		for i, v := range power {
 			transition[i] += v
+			settled = settled && math.Abs(v) <= math.Abs(transition[i])*unitRoundoff/8
 		}
-		if k >= min(n, 2*smallOrder) && grown && oneNorm(n, power) < unitRoundoff/8 {
+		if k >= n && settled {
 			break
 		}
 	}
@@ -229,18 +231,18 @@ func integrated(n int, f, w []float64, steps int) (integral []float64, largest f
 }
 
 // addSymmetric sets term = x + xᵀ, adds it to sum, and tells whether it no
-// longer matters.
+// longer matters to any entry.
 func addSymmetric(n int, term, x, sum []float64) (settled bool) {
-	largest, whole := 0.0, 0.0
+	settled = true
 	for i := range n {
 		for j := range n {
-			term[i*n+j] = x[i*n+j] + x[j*n+i]
-			sum[i*n+j] += term[i*n+j]
-			largest = math.Max(largest, math.Abs(term[i*n+j]))
-			whole = math.Max(whole, math.Abs(sum[i*n+j]))
+			v := x[i*n+j] + x[j*n+i]
+			term[i*n+j] = v
+			sum[i*n+j] += v
+			settled = settled && math.Abs(v) <= math.Abs(sum[i*n+j])*unitRoundoff/8
 		}
 	}
-	return largest <= whole*unitRoundoff/8
+	return settled
 }
 
 func symmetrise(n int, x []float64) {
