@@ -174,6 +174,7 @@ func (s *gainSearch) climb(ctx context.Context) error {
 		s.try(math.Hypot(real(pole), imag(pole)))
 		s.try(math.Abs(imag(pole)))
 	}
+	s.survey()
 	if s.low == 0 {
 		// A response that vanishes at more points than it has zeros is zero.
 		for k := range 2*len(s.poles) + 3 {
@@ -198,11 +199,6 @@ func (s *gainSearch) climb(ctx context.Context) error {
 				s.try((w + candidates[i-1]) / 2)
 				s.try(math.Sqrt(w * candidates[i-1]))
 			}
-		}
-		// The interval beyond the last crossing has no middle; when the level is the
-		// gain at infinity, its other end is lost in rounding.
-		for factor := 1.5; factor < 1e4; factor *= factor {
-			s.try(factor * candidates[len(candidates)-1])
 		}
 		s.ascend()
 		if s.low <= level {
@@ -279,8 +275,31 @@ func (s *gainSearch) ascend() {
 	if s.at == 0 || math.IsInf(s.at, 1) {
 		return
 	}
-	for _, reach := range []float64{0.1, 1e-2, 1e-3, 1e-4} {
-		s.golden(s.at*(1-reach), s.at*(1+reach), 12)
+	for _, factor := range []float64{30, 3, 1.3, 1.03, 1.003, 1.0003} {
+		s.golden(s.at/factor, s.at*factor, 12)
+	}
+}
+
+// survey tries frequencies spread around and beyond the poles. Where the gain
+// at infinite frequency is nearly the largest, the Hamiltonian of a level close
+// to it is singular to working precision and its eigenvalues say little.
+func (s *gainSearch) survey() {
+	slowest, fastest := math.Inf(1), 0.0
+	for _, pole := range s.poles {
+		if size := math.Hypot(real(pole), imag(pole)); size > 0 {
+			slowest, fastest = math.Min(slowest, size), math.Max(fastest, size)
+		}
+	}
+	if fastest == 0 {
+		return
+	}
+	const points = 64
+	lo, hi := math.Log(slowest/30), math.Log(fastest*1000)
+	for k := range points {
+		s.try(math.Exp(lo + (hi-lo)*float64(k)/(points-1)))
+	}
+	if !math.IsInf(s.at, 1) {
+		s.ascend()
 	}
 }
 
@@ -310,6 +329,9 @@ func (s *gainSearch) result() (*GainPeak, error) {
 	peak.Certificate = Certificate{Method: "level sets of the Hamiltonian", Digits: mostDigits}
 	if s.low == 0 {
 		return peak, nil
+	}
+	if math.IsInf(s.at, 1) {
+		peak.Certificate.note("the gain is approached at the highest frequency; near it the level test is almost singular, so the upper end rests on the frequencies surveyed too")
 	}
 	if s.period > 0 {
 		peak.Frequency = 2 * math.Atan(s.at/s.alpha) / s.period
