@@ -250,7 +250,9 @@ func oneNorm(n int, a []float64) float64 {
 		for i := range n {
 			sum += math.Abs(a[i*n+j])
 		}
-		largest = math.Max(largest, sum)
+		if !(sum <= largest) { // true for NaN too
+			largest = sum
+		}
 	}
 	return largest
 }

@@ -208,7 +208,7 @@ func squaredExponential(n int, a []float64, c *coupling, groups []columnGroup, r
 	s.step = step
 	shiftedNorm := math.Ldexp(oneNorm(n, s.a), step)
 	s.approximant(degree)
-	growth := s.squareUp(step)
+	growth := s.squareUp(step, true)
 	value := make([]float64, n*n)
 	c.from(n, value, s.x)
 	if !allFinite(value) {
@@ -250,15 +250,15 @@ func (s *squaring) meanShift(norm float64) float64 {
 
 // squareUp squares the approximant in s.x step times, correcting what is known
 // in closed form, and returns the 2-norm estimates of e^(W·2^−k), the last the
-// result's. s.u is used as space and ends holding nothing of use.
-func (s *squaring) squareUp(step int) []float64 {
+// result's, when measured. s.u is used as space and ends holding nothing of use.
+func (s *squaring) squareUp(step int, measured bool) []float64 {
 	if s.shift != 0 {
 		scaleSlice(s.x, math.Exp(math.Ldexp(s.shift, -step)))
 	}
-	growth := make([]float64, 0, min(step, 60)+1)
+	growth := make([]float64, 0, min(step, 40)+1)
 	for k := step; ; k-- {
 		s.correct(k)
-		if k < 40 {
+		if measured && k < 40 {
 			growth = append(growth, s.twoNorm(s.x))
 		}
 		if k == 0 {
@@ -307,16 +307,28 @@ func (s *squaring) twoNorm(m []float64) float64 {
 	}
 	norm := 0.0
 	for range 3 {
-		length := blas64.Implementation().Dnrm2(n, v, 1)
+		length := euclidean(v)
 		if length == 0 || length-length != 0 {
 			return norm
 		}
 		scaleSlice(v, 1/length)
 		blas64.Implementation().Dgemv(blas.NoTrans, n, n, 1, m, n, v, 1, 0, w, 1)
-		norm = math.Max(norm, blas64.Implementation().Dnrm2(n, w, 1))
+		norm = math.Max(norm, euclidean(w))
 		blas64.Implementation().Dgemv(blas.Trans, n, n, 1, m, n, w, 1, 0, v, 1)
 	}
 	return norm
+}
+
+// euclidean is the length of v, without overflow in between.
+func euclidean(v []float64) float64 {
+	sum := 0.0
+	for _, x := range v {
+		sum += x * x
+	}
+	if sum > 0x1p-900 && sum < 0x1p900 {
+		return math.Sqrt(sum)
+	}
+	return blas64.Implementation().Dnrm2(len(v), v, 1)
 }
 
 // signOf is a fixed sequence of signs without a short period.
@@ -365,7 +377,7 @@ func (s *squaring) halfStepErrors(degree int, value []float64, groups []columnGr
 	n := s.n
 	s.halve(1)
 	s.approximant(degree)
-	s.squareUp(s.step + 1)
+	s.squareUp(s.step+1, false)
 	other := s.u
 	s.blocks.from(n, other, s.x)
 	measured := make([]float64, len(groups))

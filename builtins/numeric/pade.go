@@ -138,7 +138,9 @@ func (p *padeWork) extraSquarings(degree, s int) int {
 		}
 		largest := 0.0
 		for _, v := range next {
-			largest = math.Max(largest, v)
+			if v > largest {
+				largest = v
+			}
 		}
 		if largest == 0 {
 			return 0

@@ -75,7 +75,7 @@ func Riccati(ctx context.Context, p RiccatiProblem) (*RiccatiSolution, error) {
 		if errors.As(err, &refusal) || ctx.Err() != nil {
 			return nil, err
 		}
-		if refusal := d.diagnose(nil); refusal != nil {
+		if refusal := d.diagnose(); refusal != nil {
 			return nil, refusal
 		}
 		return nil, err

@@ -56,7 +56,11 @@ func (d *riccatiData) newton(ctx context.Context, x []float64) (*riccatiState, e
 				return nil, err
 			}
 		}
-		s.residual = d.residual(s.x, s.k, s.ac)
+		if s.doubled {
+			s.residual = d.doubledResidual(s.x, s.k)
+		} else {
+			s.residual = d.residual(s.x, s.k, s.ac)
+		}
 		s.solver.solve(dx, s.residual)
 		if s.solver.singular {
 			return nil, errNotStabilising
@@ -69,6 +73,8 @@ func (d *riccatiData) newton(ctx context.Context, x []float64) (*riccatiState, e
 			s.steps++
 			return s, d.settle(s)
 		}
+		// Steps that stall are rounding of the residual.
+		s.doubled = s.doubled || s.steps >= 3 && s.step > 0.3*previous && d.n <= doubledOrderLimit
 		previous = s.step
 		s.since = previous
 	}

@@ -268,32 +268,46 @@ func (d *riccatiData) boundaryValue(lambda complex128) float64 {
 	return ratio(sigma, frobenius(re))
 }
 
-// diagnose says why no solution was found, or nothing. Candidates beyond the
-// modes of A are the closed-loop poles near the boundary.
-func (d *riccatiData) diagnose(candidates []complex128) *Refusal {
+// near is the distance from the stability boundary within which eigenvalues are
+// looked at.
+func (d *riccatiData) near() float64 {
+	if d.sampled {
+		return nearBoundary
+	}
+	return nearBoundary * math.Max(frobenius(d.reducedA), 1e-300)
+}
+
+// besideBoundary selects the values within the given distance of the boundary,
+// one of each pair.
+func (d *riccatiData) besideBoundary(values []complex128, within float64) []complex128 {
+	var chosen []complex128
+	for _, v := range values {
+		if imag(v) >= 0 && math.Abs(d.margin(v)) <= within && len(chosen) < mostModesTested {
+			chosen = append(chosen, v)
+		}
+	}
+	return chosen
+}
+
+// hidden looks for modes hidden from the inputs or from the weights, the latter
+// near the modes of A and the further candidates.
+func (d *riccatiData) hidden(candidates []complex128) *Refusal {
 	if refusal := d.unstabilizable(); refusal != nil {
 		return refusal
 	}
-	near := nearBoundary * math.Max(frobenius(d.reducedA), 1e-300)
-	if d.sampled {
-		near = nearBoundary
-	}
-	add := func(values []complex128, within float64) {
-		for _, v := range values {
-			if imag(v) >= 0 && math.Abs(d.margin(v)) <= within && len(candidates) < mostModesTested {
-				candidates = append(candidates, v)
-			}
-		}
-	}
 	if values, err := Eigenvalues(mat.NewDense(d.n, d.n, append([]float64(nil), d.reducedA...))); err == nil {
 		// Clusters on the axis scatter far: look at all within a per mille.
-		add(values, 100*near)
+		candidates = append(candidates, d.besideBoundary(values, 100*d.near())...)
 	}
-	if refusal := d.unseen(candidates); refusal != nil {
+	return d.unseen(candidates)
+}
+
+// diagnose says why no solution was found, or nothing.
+func (d *riccatiData) diagnose() *Refusal {
+	if refusal := d.hidden(nil); refusal != nil {
 		return refusal
 	}
-	candidates = nil
-	add(d.pencilEigenvalues(), 10*near)
+	candidates := d.besideBoundary(d.pencilEigenvalues(), 10*d.near())
 	if refusal := d.unseen(candidates); refusal != nil {
 		return refusal
 	}
@@ -383,5 +397,5 @@ func (d *riccatiData) doubt(s *riccatiState) *Refusal {
 	// With Q ≥ 0 and G ≥ 0 the pencil is singular on the boundary only where a
 	// mode is hidden from the inputs or from the weights, and that is decided
 	// without taking square roots of rounding.
-	return d.diagnose(near)
+	return d.hidden(near)
 }

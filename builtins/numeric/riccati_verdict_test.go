@@ -54,14 +54,14 @@ func verdictCases() []verdictCase {
 		{"oscillator without weight", false, d(3, 3, 0, 2, 0, -2, 0, 0, 0, 0, 1), d(3, 1, 1, 0, 1), d(3, 3, 0, 0, 0, 0, 0, 0, 0, 0, 1), 2i, true},
 		{"position without weight", false, d(3, 3, 0, 1, 0, 0, 0, 0, 0, 0, -1), d(3, 1, 0, 1, 1), d(3, 3, 0, 0, 0, 0, 1, 0, 0, 0, 1), 0, true},
 		{"stable mode without input", false, d(3, 3, -1e-3, 0, 0, 0, -1, 1, 0, 0, 2), d(3, 1, 0, 1, 1), d(3, 3, 1, 0, 0, 0, 1, 0, 0, 0, 1), 0, false},
-		{"slow mode without weight", false, d(3, 3, -5e-8, 0, 0, 0, -1, 1, 0, 0, -2), d(3, 1, 1, 1, 1), d(3, 3, 0, 0, 0, 0, 1, 0, 0, 0, 1), 0, false},
-		{"slowly unstable mode without weight", false, d(3, 3, 5e-8, 0, 0, 0, -1, 1, 0, 0, -2), d(3, 1, 1, 1, 1), d(3, 3, 0, 0, 0, 0, 1, 0, 0, 0, 1), 0, false},
+		{"slow mode without weight", false, d(3, 3, -1e-6, 0, 0, 0, -1, 1, 0, 0, -2), d(3, 1, 1, 1, 1), d(3, 3, 0, 0, 0, 0, 1, 0, 0, 0, 1), 0, false},
+		{"slowly unstable mode without weight", false, d(3, 3, 1e-6, 0, 0, 0, -1, 1, 0, 0, -2), d(3, 1, 1, 1, 1), d(3, 3, 0, 0, 0, 0, 1, 0, 0, 0, 1), 0, false},
 		{"unstable mode without input, sampled", true, d(3, 3, 1.5, 0, 0, 0, 0.2, 1, 0, 0, 0.5), d(3, 1, 0, 1, 1), d(3, 3, 1, 0, 0, 0, 1, 0, 0, 0, 1), 1.5, true},
 		{"integrator without input, sampled", true, d(3, 3, 1, 0, 0, 0, 0.2, 1, 0, 0, 0.5), d(3, 1, 0, 1, 1), d(3, 3, 1, 0, 0, 0, 1, 0, 0, 0, 1), 1, true},
 		{"integrator without weight, sampled", true, d(3, 3, 1, 0, 0, 0, 0.2, 1, 0, 0, 0.5), d(3, 1, 1, 1, 1), d(3, 3, 0, 0, 0, 0, 1, 0, 0, 0, 1), 1, true},
 		{"circle pair without weight, sampled", true, d(3, 3, 0.6, 0.8, 0, -0.8, 0.6, 0, 0, 0, 2), d(3, 1, 1, 0, 1), d(3, 3, 0, 0, 0, 0, 0, 0, 0, 0, 1), 0.6 + 0.8i, true},
 		{"mode at -1 without weight, sampled", true, d(2, 2, -1, 0, 0, 0.5), d(2, 1, 1, 1), d(2, 2, 0, 0, 0, 1), -1, true},
-		{"slow mode without weight, sampled", true, d(3, 3, 1-5e-8, 0, 0, 0, 0.2, 1, 0, 0, 0.5), d(3, 1, 1, 1, 1), d(3, 3, 0, 0, 0, 0, 1, 0, 0, 0, 1), 0, false},
+		{"slow mode without weight, sampled", true, d(3, 3, 1-1e-6, 0, 0, 0, 0.2, 1, 0, 0, 0.5), d(3, 1, 1, 1, 1), d(3, 3, 0, 0, 0, 0, 1, 0, 0, 0, 1), 0, false},
 		{"stable mode without input, sampled", true, d(3, 3, 0.999, 0, 0, 0, 0.2, 1, 0, 0, 3), d(3, 1, 0, 1, 1), d(3, 3, 1, 0, 0, 0, 1, 0, 0, 0, 1), 0, false},
 	}
 }
@@ -96,6 +96,32 @@ func TestRiccatiVerdicts(t *testing.T) {
 			}
 			if nearest > 1e-6 {
 				t.Errorf("%s: named %v: %v", name, refusal.Modes, err)
+			}
+		}
+	}
+}
+
+// TestRiccatiSlowModesAreNotBoundaryModes: exact zeros in the weights leave no
+// doubt about a pole as close to the boundary as −1e-10; it is the true one.
+func TestRiccatiSlowModesAreNotBoundaryModes(t *testing.T) {
+	for _, slow := range []float64{5e-8, 1e-10} {
+		for _, sampled := range []bool{false, true} {
+			a, want := mat.NewDense(2, 2, []float64{-slow, 0, 0, 0.5}), -slow
+			if sampled {
+				a, want = mat.NewDense(2, 2, []float64{1 - slow, 0, 0, 0.5}), 1-slow
+			}
+			s, err := Riccati(context.Background(), RiccatiProblem{A: a, B: mat.NewDense(2, 1, []float64{1, 1}),
+				Q: mat.NewDense(2, 2, []float64{0, 0, 0, 1}), R: mat.NewDense(1, 1, []float64{1}), Sampled: sampled})
+			if err != nil {
+				t.Errorf("slow %g sampled %v: %v", slow, sampled, err)
+				continue
+			}
+			nearest := math.Inf(1)
+			for _, p := range s.Poles {
+				nearest = math.Min(nearest, cmplx.Abs(p-complex(want, 0)))
+			}
+			if nearest > 0.01*slow {
+				t.Errorf("slow %g sampled %v: poles %v", slow, sampled, s.Poles)
 			}
 		}
 	}

@@ -1,0 +1,548 @@
+package reach
+
+import (
+	"fmt"
+	"math"
+	"math/cmplx"
+	"strings"
+
+	"gonum.org/v1/gonum/mat"
+
+	"gainwright/builtins/numeric"
+	"gainwright/builtins/system"
+	"gainwright/lang/diag"
+	"gainwright/lang/exact"
+	"gainwright/lang/value"
+)
+
+var modeBuiltins = []*value.Builtin{
+	{
+		Name: "modes", Family: "reach",
+		Params:  []value.Param{{Name: "plant", Shape: value.ASystem, Doc: "the plant"}},
+		Result:  "report, a row a mode",
+		Summary: "each mode: what moves it, what sees it, how it decays",
+		Doc: "A row a mode, slowest first, a conjugate pair or a repeated pole in one row. The verdict says how it behaves and whether it is moved and seen. " +
+			"The strength after each name is |wᴴ·b| for inputs and |c·v| for outputs, with w and v the unit left and right eigenvectors, after scaling by the declared ranges " +
+			"of states, inputs and outputs; without ranges it is in these units and ranks nothing. Of a repeated pole the lengths of its chains are shown instead. " +
+			"Sampled poles are judged by p = ln z/T. Fields: poles, missing (moved by no input), unseen (seen by no output), and the table.",
+		Examples: []value.Example{
+			{Input: "modes(plant([[0, 1], [0, 0]], [[0], [1]], [[0, 1]])).unseen", Output: "= [0]"},
+		},
+		Errors:  []string{"eigenvalues that were not found"},
+		Source:  "Hautus 1969; strengths: Hamdan & Nayfeh 1989, J. Guidance 12",
+		SeeAlso: []string{"reachability", "observability", "poles"},
+		Func:    modes,
+	},
+}
+
+// mode is one row: an eigenvalue (the one with the imaginary part ≥ 0) and how often it occurs.
+type mode struct {
+	root  system.Root
+	count int
+	pair  bool
+	chain []int // lengths of the Jordan chains, where known and count > 1
+	moved [2]int
+	seen  [2]int // how many of count are moved (seen) by some signal; [1] is count
+	by    []mark // inputs
+	shown []mark // outputs
+}
+
+// mark is a signal with the strength of its grip on a mode; strength < 0 is unknown.
+type mark struct {
+	name     string
+	strength float64
+	part     bool // only some of the repeated modes
+}
+
+func modes(c *value.Call) (value.Value, error) {
+	p := c.Plant("plant")
+	rows, err := modesOf(p)
+	if err != nil {
+		return nil, err
+	}
+	timeUnit := "s"
+	r := &value.Report{Columns: []string{"verdict", "moved by", "seen by", "pole", "time constant [" + timeUnit + "]", "period [s]", "damping ratio"}}
+	var missing, unseen, all []system.Root
+	hidden := 0
+	for _, m := range rows {
+		r.Rows = append(r.Rows, m.row(p))
+		for _, root := range m.members() {
+			all = append(all, root)
+		}
+		for i, root := range m.members() {
+			if i < (m.count-m.moved[0])*m.width() {
+				missing = append(missing, root)
+			}
+			if i < (m.count-m.seen[0])*m.width() {
+				unseen = append(unseen, root)
+			}
+		}
+		if (m.moved[0] < m.count || m.seen[0] < m.count) && !Decays(m.root, p.Every != nil) {
+			hidden++
+		}
+	}
+	n, _ := p.A.Dims()
+	r.Title = fmt.Sprintf("%d modes", n)
+	if n == 1 {
+		r.Title = "1 mode"
+	}
+	if _, ok := scaling(p); ok {
+		r.Notes = append(r.Notes, "strengths are in declared ranges")
+	} else if n > 0 {
+		r.Notes = append(r.Notes, "strengths are in these units: declare ranges of states, inputs and outputs to compare them")
+	}
+	if hidden > 0 {
+		r.Notes = append(r.Notes, "a mode that does not decay is not moved or not seen: no feedback from these outputs to these inputs will tame it")
+	}
+	r.Fields = []value.Named{
+		{Name: "poles", Value: system.List(all)},
+		{Name: "missing", Value: system.List(missing)},
+		{Name: "unseen", Value: system.List(unseen)},
+	}
+	return r, nil
+}
+
+// width is how many poles one count stands for.
+func (m *mode) width() int {
+	if m.pair {
+		return 2
+	}
+	return 1
+}
+
+// members lists the poles of the row, pair by pair.
+func (m *mode) members() []system.Root {
+	var out []system.Root
+	for range m.count {
+		if m.pair {
+			out = append(out, conjugated(m.root))
+		}
+		out = append(out, m.root)
+	}
+	return out
+}
+
+func conjugated(r system.Root) system.Root {
+	r.Value = cmplx.Conj(r.Value)
+	if r.Im != nil {
+		im := value.Rat(newRat().Neg(r.Im.Exact))
+		r.Im = &im
+	}
+	return r
+}
+
+// modesOf groups the eigenvalues into rows and finds who moves and who sees each.
+func modesOf(p *value.Plant) ([]*mode, error) {
+	roots, err := system.Eigenvalues(p.A)
+	if err != nil {
+		return nil, err
+	}
+	rows := grouped(roots, system.ExactPlant(p))
+	if err := judge(p, rows, false); err != nil {
+		return nil, err
+	}
+	if err := judge(p, rows, true); err != nil {
+		return nil, err
+	}
+	if err := strengths(p, rows); err != nil {
+		return nil, err
+	}
+	if system.ExactPlant(p) {
+		return rows, chains(p, rows)
+	}
+	return rows, nil
+}
+
+// grouped makes a row of each distinct eigenvalue with imaginary part ≥ 0. Of an exact
+// plant equal means equal; of a floating one, within the error estimates.
+func grouped(roots []system.Root, exactly bool) []*mode {
+	var rows []*mode
+	for _, r := range roots {
+		if imag(r.Value) < 0 {
+			continue
+		}
+		found := false
+		for _, m := range rows {
+			d := cmplx.Abs(m.root.Value - r.Value)
+			near := 4 * (m.root.Err + r.Err)
+			if exactly {
+				near = 0
+			}
+			if d <= near {
+				m.count++
+				found = true
+				break
+			}
+		}
+		if !found {
+			rows = append(rows, &mode{root: r, count: 1, pair: imag(r.Value) > 0})
+		}
+	}
+	for _, m := range rows {
+		m.moved, m.seen = [2]int{m.count, m.count}, [2]int{m.count, m.count}
+	}
+	return rows
+}
+
+// judge finds, for each row, which signals have a grip on it: the inputs, or with dual set the outputs.
+func judge(p *value.Plant, rows []*mode, dual bool) error {
+	q, err := pairOfPlant(p, dual)
+	if err != nil {
+		return err
+	}
+	missing, err := missingModes(q, q.b)
+	if err != nil {
+		return err
+	}
+	for _, m := range rows {
+		left := m.count - occurrences(missing, m, rows)
+		if dual {
+			m.seen[0] = left
+		} else {
+			m.moved[0] = left
+		}
+	}
+	for j, s := range q.signals {
+		one, err := missingModes(q, system.Columns(q.b, j))
+		if err != nil {
+			return err
+		}
+		for _, m := range rows {
+			lost := occurrences(one, m, rows)
+			if lost == m.count {
+				continue
+			}
+			k := mark{name: s.Name, strength: -1, part: lost > 0}
+			if dual {
+				m.shown = append(m.shown, k)
+			} else {
+				m.by = append(m.by, k)
+			}
+		}
+	}
+	return nil
+}
+
+// missingModes are the eigenvalues that b does not move.
+func missingModes(q *pair, b *value.Matrix) ([]system.Root, error) {
+	one := *q
+	one.b = b
+	if one.exact() {
+		u, err := exact.UnreachablePolynomial(one.a.Exact(), b.Exact())
+		if err != nil {
+			return nil, diag.New(diag.Limit, "%v", err)
+		}
+		if u.Degree() < 1 {
+			return nil, nil
+		}
+		return system.RootsOf(u)
+	}
+	d, err := one.decide()
+	if err != nil {
+		return nil, err
+	}
+	return d.missing, nil
+}
+
+// occurrences counts the missing eigenvalues that belong to a row: those nearest to it of all rows.
+func occurrences(missing []system.Root, m *mode, rows []*mode) int {
+	count := 0
+	for _, r := range missing {
+		if imag(r.Value) < 0 {
+			continue
+		}
+		best := m
+		for _, other := range rows {
+			if cmplx.Abs(other.root.Value-r.Value) < cmplx.Abs(best.root.Value-r.Value) {
+				best = other
+			}
+		}
+		if best == m {
+			count++
+		}
+	}
+	return min(count, m.count)
+}
+
+// chains finds the lengths of the Jordan chains of repeated rational modes of an exact plant.
+func chains(p *value.Plant, rows []*mode) error {
+	for _, m := range rows {
+		if m.count < 2 || m.root.Re == nil {
+			continue
+		}
+		re, im := m.root.Re.Exact, m.root.Im.Exact
+		factor := exact.NewPolynomial(newRat().SetInt64(1), newRat().Neg(re))
+		if im.Sign() != 0 {
+			twice := newRat().Add(re, re)
+			square := newRat().Add(newRat().Mul(re, re), newRat().Mul(im, im))
+			factor = exact.NewPolynomial(newRat().SetInt64(1), twice.Neg(twice), square)
+		}
+		sizes, ok, err := exact.JordanSizes(p.A.Exact(), factor)
+		if err != nil {
+			return diag.New(diag.Limit, "%v", err)
+		}
+		if ok {
+			m.chain = sizes
+		}
+	}
+	return nil
+}
+
+// scaling gives 1/range factors of states, inputs and outputs when all are declared.
+func scaling(p *value.Plant) (r [3][]float64, ok bool) {
+	for i, s := range [][]value.Signal{p.States, p.Inputs, p.Outputs} {
+		var full bool
+		if r[i], full = ranges(s); !full {
+			// an output that is a state shares the state's range
+			if i != 2 {
+				return r, false
+			}
+			if r[i], full = outputRanges(p); !full {
+				return r, false
+			}
+		}
+	}
+	return r, len(p.States) > 0
+}
+
+func outputRanges(p *value.Plant) ([]float64, bool) {
+	out := make([]float64, len(p.Outputs))
+	for i, s := range p.Outputs {
+		if s.Range != nil {
+			out[i] = s.Range.Float64()
+			continue
+		}
+		for _, x := range p.States {
+			if x.Name == s.Name && x.Range != nil {
+				out[i] = x.Range.Float64()
+			}
+		}
+		if out[i] == 0 {
+			return nil, false
+		}
+	}
+	return out, true
+}
+
+// strengths fills in |wᴴ·b| and |c·v| of simple modes.
+func strengths(p *value.Plant, rows []*mode) error {
+	n, _ := p.A.Dims()
+	if n == 0 {
+		return nil
+	}
+	a, b, c := p.A.Dense(), p.B.Dense(), p.C.Dense()
+	if r, ok := scaling(p); ok {
+		a.Apply(func(i, j int, v float64) float64 { return v * r[0][j] / r[0][i] }, a)
+		if !b.IsEmpty() {
+			b.Apply(func(i, j int, v float64) float64 { return v * r[1][j] / r[0][i] }, b)
+		}
+		if !c.IsEmpty() {
+			c.Apply(func(i, j int, v float64) float64 { return v * r[0][j] / r[2][i] }, c)
+		}
+	}
+	e, err := numeric.Eigen(a)
+	if err != nil {
+		return system.Refused(err, "plant")
+	}
+	for _, m := range rows {
+		if m.count > 1 {
+			continue
+		}
+		k := nearest(e.Values, m.root.Value)
+		for i := range m.by {
+			m.by[i].strength = grip(e.Left, k, b, signalIndex(p.Inputs, m.by[i].name), false)
+		}
+		for i := range m.shown {
+			m.shown[i].strength = grip(e.Right, k, c, signalIndex(p.Outputs, m.shown[i].name), true)
+		}
+	}
+	return nil
+}
+
+func signalIndex(signals []value.Signal, name string) int {
+	for i, s := range signals {
+		if s.Name == name {
+			return i
+		}
+	}
+	return -1
+}
+
+// grip is |xᴴ·column j of m|, or with rows set |row j of m · x|, x the k-th eigenvector of unit length.
+func grip(vectors *mat.CDense, k int, m *mat.Dense, j int, rows bool) float64 {
+	n, _ := vectors.Dims()
+	var sum complex128
+	norm := 0.0
+	for i := range n {
+		x := vectors.At(i, k)
+		norm += real(x)*real(x) + imag(x)*imag(x)
+		if rows {
+			sum += x * complex(m.At(j, i), 0)
+		} else {
+			sum += cmplx.Conj(x) * complex(m.At(i, j), 0)
+		}
+	}
+	return cmplx.Abs(sum) / math.Sqrt(norm)
+}
+
+func nearest(values []complex128, v complex128) int {
+	best := 0
+	for i, w := range values {
+		if cmplx.Abs(w-v) < cmplx.Abs(values[best]-v) {
+			best = i
+		}
+	}
+	return best
+}
+
+// row words one mode.
+func (m *mode) row(p *value.Plant) []value.Value {
+	z := m.root
+	v := z.Value
+	sampled := p.Every != nil
+	if sampled {
+		v = cmplx.Log(v) / complex(p.Every.Float64(), 0)
+	}
+	dead := sampled && z.Value == 0
+	cells := []value.Value{value.Text(m.verdict(sampled)), value.Text(marks(m.by)), value.Text(marks(m.shown)), m.pole(), nil, nil, nil}
+	if dead {
+		return cells
+	}
+	rel := 0.0
+	if a := cmplx.Abs(z.Value); a > 0 {
+		rel = z.Err / a
+	}
+	still := m.integrates(sampled) || onEdge(z, sampled)
+	if !still && real(v) != 0 {
+		cells[4] = value.FloatErr(1/math.Abs(real(v)), rel*cmplx.Abs(v)/(real(v)*real(v)))
+		if r := z.Re; !sampled && r != nil && r.Exact.Sign() != 0 {
+			inverse := newRat().Inv(r.Exact)
+			cells[4] = value.Rat(inverse.Abs(inverse))
+		}
+	}
+	if imag(v) != 0 {
+		cells[5] = value.FloatErr(2*math.Pi/math.Abs(imag(v)), rel*2*math.Pi*cmplx.Abs(v)/(imag(v)*imag(v)))
+	}
+	switch {
+	case m.integrates(sampled), onEdge(z, sampled):
+		cells[6] = value.Int(0)
+	case imag(v) == 0 && real(v) < 0:
+		cells[6] = value.Int(1)
+	case imag(v) == 0:
+		cells[6] = value.Int(-1)
+	default:
+		cells[6] = value.FloatErr(-real(v)/cmplx.Abs(v), 2*rel)
+	}
+	return cells
+}
+
+// pole is the pole of the row, a pair as one list a ± bi.
+func (m *mode) pole() value.Value {
+	if !m.pair {
+		return m.root.Number()
+	}
+	return &value.List{Items: []value.Value{conjugated(m.root).Number(), m.root.Number()}, Pair: true}
+}
+
+func (m *mode) integrates(sampled bool) bool {
+	still := complex128(0)
+	if sampled {
+		still = 1
+	}
+	return cmplx.Abs(m.root.Value-still) <= m.root.Err && m.root.Err < 1e-6
+}
+
+// onEdge tells whether a mode lies on the axis or the circle within its error.
+func onEdge(r system.Root, sampled bool) bool {
+	if r.Re != nil {
+		if sampled {
+			return squaredModulus(r) == 0
+		}
+		return r.Re.Exact.Sign() == 0
+	}
+	if sampled {
+		return math.Abs(cmplx.Abs(r.Value)-1) <= r.Err
+	}
+	return math.Abs(real(r.Value)) <= r.Err
+}
+
+// verdict words how a mode behaves and whether it is moved and seen.
+func (m *mode) verdict(sampled bool) string {
+	var how string
+	swings := m.pair
+	switch {
+	case sampled && m.root.Value == 0:
+		how = "gone in a step"
+	case m.integrates(sampled):
+		how = "integrates"
+	case onEdge(m.root, sampled):
+		how = "swings for ever"
+	case Decays(m.root, sampled):
+		how = "decays"
+		if swings {
+			how = "swings, decays"
+		}
+	default:
+		how = "grows"
+		if swings {
+			how = "swings, grows"
+		}
+	}
+	if sampled && !m.pair && real(m.root.Value) < 0 {
+		how += ", changing sign"
+	}
+	if m.count > 1 {
+		how += fmt.Sprintf(", %d times", m.count)
+		if len(m.chain) > 0 {
+			var lengths []string
+			for _, k := range m.chain {
+				lengths = append(lengths, fmt.Sprint(k))
+			}
+			word := "chain of "
+			if len(m.chain) > 1 {
+				word = "chains of "
+			}
+			how += " (" + word + strings.Join(lengths, ", ") + ")"
+		}
+	}
+	return how + "; " + m.access()
+}
+
+// access words whether the mode is moved and seen.
+func (m *mode) access() string {
+	state := func(k [2]int, verb string) string {
+		switch {
+		case k[0] == k[1]:
+			return verb
+		case k[0] == 0:
+			return "not " + verb
+		}
+		return fmt.Sprintf("%d of %d %s", k[0], k[1], verb)
+	}
+	moved, seen := state(m.moved, "moved"), state(m.seen, "seen")
+	if m.moved[0] == 0 && m.seen[0] == 0 {
+		return "neither moved nor seen"
+	}
+	if m.moved[0] == m.count && m.seen[0] == m.count {
+		return "moved and seen"
+	}
+	return moved + ", " + seen
+}
+
+func marks(list []mark) string {
+	if len(list) == 0 {
+		return "nothing"
+	}
+	var words []string
+	for _, k := range list {
+		w := k.name
+		if k.strength >= 0 {
+			w += fmt.Sprintf(" %.2g", k.strength)
+		}
+		if k.part {
+			w += " (in part)"
+		}
+		words = append(words, w)
+	}
+	return strings.Join(words, ", ")
+}

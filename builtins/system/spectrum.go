@@ -1,0 +1,245 @@
+package system
+
+import (
+	"math"
+	"math/cmplx"
+	"sort"
+
+	"gonum.org/v1/gonum/mat"
+
+	"gainwright/builtins/numeric"
+	"gainwright/lang/diag"
+	"gainwright/lang/exact"
+	"gainwright/lang/value"
+)
+
+// ExactOrder is the largest number of states for which exact answers are kept.
+const ExactOrder = 30
+
+// fewDigits is where floating eigenvalues are found again in higher precision.
+const fewDigits = 12
+
+// Root is an eigenvalue, pole or zero with its absolute error estimate. Exact parts are
+// set when the root is rational (or has rational parts); Multiplicity counts how often a
+// certified root occurs, 1 for a floating one.
+type Root struct {
+	Value        complex128
+	Err          float64
+	Re, Im       *exactPart
+	Multiplicity int
+}
+
+type exactPart = value.Number
+
+// Number gives the root as a Number when it is real, else as a Complex.
+func (r Root) Number() value.Value {
+	if r.Re != nil {
+		if r.Im.Exact.Sign() == 0 {
+			return *r.Re
+		}
+		return value.Complex{ExactRe: r.Re.Exact, ExactIm: r.Im.Exact}
+	}
+	if imag(r.Value) == 0 {
+		return value.FloatErr(real(r.Value), r.Err)
+	}
+	return value.Complex{C: r.Value, Err: math.Max(r.Err, cmplx.Abs(r.Value)*0x1p-53)}
+}
+
+// Eigenvalues gives the eigenvalues of a square matrix, each as often as it occurs,
+// ordered by magnitude. Of an exact matrix of at most ExactOrder rows they are certified
+// roots of the exact characteristic polynomial. Floating ones whose sensitivity leaves
+// few digits are found again from the binary64 entries taken as exact.
+func Eigenvalues(m *value.Matrix) ([]Root, error) {
+	n, _ := m.Dims()
+	if n == 0 {
+		return nil, nil
+	}
+	if m.IsComplex() {
+		return complexEigenvalues(m)
+	}
+	if m.IsExact() && n <= ExactOrder {
+		return RootsOf(m.Exact().CharacteristicPolynomial())
+	}
+	e, err := numeric.Eigen(m.Dense())
+	if err != nil {
+		return nil, Refused(err, "")
+	}
+	roots := make([]Root, n)
+	scale, worst := 0.0, 0.0
+	for i, v := range e.Values {
+		roots[i] = Root{Value: v, Err: e.ErrorOf[i], Multiplicity: 1}
+		scale = math.Max(scale, cmplx.Abs(v))
+		worst = math.Max(worst, e.ErrorOf[i])
+	}
+	if n <= ExactOrder && worst > scale*math.Pow(10, -fewDigits) {
+		if better, err := sharpened(m, e); err == nil {
+			return better, nil
+		}
+	}
+	for i := range roots {
+		roots[i].Err += e.Condition[i] * m.Err * math.Sqrt(float64(n))
+	}
+	sortRoots(roots)
+	return roots, nil
+}
+
+// sharpened finds the eigenvalues of the stored binary64 matrix in higher precision; what
+// is left of the error is what the entries' own uncertainty makes of it.
+func sharpened(m *value.Matrix, e *numeric.Eigensystem) ([]Root, error) {
+	n, _ := m.Dims()
+	re, _ := m.Floats()
+	x, err := exact.FromFloats(n, n, re)
+	if err != nil {
+		return nil, err
+	}
+	roots, err := RootsOf(x.CharacteristicPolynomial())
+	if err != nil {
+		return nil, err
+	}
+	for i := range roots {
+		best, cond := math.Inf(1), 1.0
+		for j, v := range e.Values {
+			if d := cmplx.Abs(v - roots[i].Value); d < best {
+				best, cond = d, e.Condition[j]
+			}
+		}
+		roots[i].Err = cond*m.Err*math.Sqrt(float64(n)) + cmplx.Abs(roots[i].Value)*0x1p-53
+		if m.Err > 0 {
+			roots[i].Re, roots[i].Im = nil, nil
+		}
+	}
+	return roots, nil
+}
+
+// RootsOf gives the certified roots of an exact polynomial, each as often as it occurs,
+// ordered by magnitude.
+func RootsOf(p exact.Polynomial) ([]Root, error) {
+	found, err := p.Roots(17)
+	if err != nil {
+		return nil, diag.New(diag.Numerical, "the roots of a polynomial of degree %d were not found: %v", p.Degree(), err)
+	}
+	var roots []Root
+	for _, f := range found {
+		r := Root{Value: f.Value, Err: f.Radius + cmplx.Abs(f.Value)*0x1p-53, Multiplicity: f.Multiplicity}
+		if f.Exact {
+			re, im := value.Rat(f.ExactRe), value.Rat(f.ExactIm)
+			r.Re, r.Im = &re, &im
+		}
+		for range f.Multiplicity {
+			roots = append(roots, r)
+		}
+	}
+	sortRoots(roots)
+	return roots, nil
+}
+
+// complexEigenvalues finds them in the real matrix [[R, −I], [I, R]] of twice the size,
+// whose spectrum is that of R + iI and its conjugate, and keeps of each pair λ, λ̄ the
+// one for which R + iI − λ is closer to singular.
+func complexEigenvalues(m *value.Matrix) ([]Root, error) {
+	n, _ := m.Dims()
+	e, err := numeric.Eigen(realForm(m, 0))
+	if err != nil {
+		return nil, Refused(err, "")
+	}
+	var roots []Root
+	upper := map[int]int{}
+	for i, v := range e.Values {
+		if imag(v) < 0 {
+			continue
+		}
+		pick := v
+		if imag(v) > 0 {
+			same := nearIndex(e.Values[:i], v, e.ErrorOf[i])
+			upper[same]++
+			if distanceToSingular(m, cmplx.Conj(v)) < distanceToSingular(m, v) || upper[same] == 2 {
+				pick = cmplx.Conj(v)
+			}
+		} else if len(e.Values) > i+1 && imag(v) == 0 {
+			// a real eigenvalue occurs twice in the doubled matrix: count every other one
+			upper[-1]++
+			if upper[-1]%2 == 0 {
+				continue
+			}
+		}
+		roots = append(roots, Root{Value: pick, Err: e.ErrorOf[i] + e.Condition[i]*m.Err, Multiplicity: 1})
+	}
+	if len(roots) != n {
+		return nil, diag.New(diag.Numerical, "the eigenvalues of this complex matrix could not be told from their conjugates")
+	}
+	sortRoots(roots)
+	return roots, nil
+}
+
+// nearIndex finds the first value within the error, or len(vs).
+func nearIndex(vs []complex128, v complex128, err float64) int {
+	for i, w := range vs {
+		if cmplx.Abs(w-v) <= 4*err+1e-13*cmplx.Abs(v) {
+			return i
+		}
+	}
+	return len(vs)
+}
+
+// realForm is the real matrix of twice the size that stands for m − shift.
+func realForm(m *value.Matrix, shift complex128) *mat.Dense {
+	n, _ := m.Dims()
+	re, im := m.Floats()
+	d := mat.NewDense(2*n, 2*n, nil)
+	for i := range n {
+		for j := range n {
+			x, y := re[i*n+j], im[i*n+j]
+			if i == j {
+				x, y = x-real(shift), y-imag(shift)
+			}
+			d.Set(i, j, x)
+			d.Set(n+i, n+j, x)
+			d.Set(i, n+j, -y)
+			d.Set(n+i, j, y)
+		}
+	}
+	return d
+}
+
+// distanceToSingular is the smallest singular value of m − λ.
+func distanceToSingular(m *value.Matrix, lambda complex128) float64 {
+	var svd mat.SVD
+	if !svd.Factorize(realForm(m, lambda), mat.SVDNone) {
+		return math.Inf(1)
+	}
+	s := svd.Values(nil)
+	return s[len(s)-1]
+}
+
+// sortRoots orders by magnitude, then real part descending, then imaginary part; equal
+// magnitudes to rounding count as equal, so that pairs stay together.
+func sortRoots(roots []Root) {
+	sort.SliceStable(roots, func(i, j int) bool {
+		a, b := roots[i].Value, roots[j].Value
+		ma, mb := cmplx.Abs(a), cmplx.Abs(b)
+		if math.Abs(ma-mb) > 1e-12*math.Max(ma, mb) {
+			return ma < mb
+		}
+		if d := real(a) - real(b); math.Abs(d) > 1e-12*ma {
+			return d > 0
+		}
+		return imag(a) < imag(b)
+	})
+}
+
+// List turns roots into a list value.
+func List(roots []Root) *value.List {
+	l := &value.List{}
+	for _, r := range roots {
+		l.Items = append(l.Items, r.Number())
+	}
+	return l
+}
+
+// Refused turns an error of the numerical package into one for the user that points at a parameter.
+func Refused(err error, param string) error {
+	if d, ok := err.(*diag.Error); ok {
+		return d
+	}
+	return diag.New(diag.Numerical, "%v", err).For(param)
+}
