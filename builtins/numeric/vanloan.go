@@ -143,7 +143,7 @@ func doubledIntegral(n int, f, w []float64, parts [][4]int) ([]float64, Certific
 	var results [2][]float64
 	transition := 1.0
 	for k := range results {
-		integral, largest := integrated(n, scaled, weight, steps+k)
+		integral, largest := integrated(n, scaled, weight, steps+k, max(c.depth+1, min(n, smallOrder)))
 		results[k] = make([]float64, n*n)
 		undoCongruence(n, c, results[k], integral)
 		if !allFinite(results[k]) {
@@ -189,9 +189,10 @@ func undoCongruence(n int, c *coupling, dst, w []float64) {
 	}
 }
 
-// integrated sums the series over 2^−steps and doubles steps times; it returns
-// the integral and the largest norm of the transition matrix met.
-func integrated(n int, f, w []float64, steps int) (integral []float64, largest float64) {
+// integrated sums the series over 2^−steps, at least the given number of terms,
+// and doubles steps times; it returns the integral and the largest norm of the
+// transition matrix met.
+func integrated(n int, f, w []float64, steps, terms int) (integral []float64, largest float64) {
 	step := math.Ldexp(1, -steps)
 	integral, transition := make([]float64, n*n), make([]float64, n*n)
 	term, power, space := make([]float64, n*n), make([]float64, n*n), make([]float64, n*n)
@@ -201,9 +202,9 @@ func integrated(n int, f, w []float64, steps int) (integral []float64, largest f
 		transition[i*n+i], power[i*n+i] = 1, 1
 	}
 	// Terms shrink at least like 1/k!. Entries differ widely in size in scaled
-	// coordinates and each must settle by itself; those that need a path of n
-	// couplings first appear at k = n, so n terms are always summed.
-	for k := 1; k <= n+40; k++ {
+	// coordinates and each must settle by itself; those that need a path of many
+	// couplings first appear late, hence the least number of terms.
+	for k := 1; k <= terms+40; k++ {
 		multiply(blas.NoTrans, blas.NoTrans, n, n, n, step/float64(k), power, n, f, n, 0, space, n)
 		power, space = space, power
 		multiply(blas.NoTrans, blas.NoTrans, n, n, n, step/float64(k+1), term, n, f, n, 0, space, n)
@@ -212,7 +213,7 @@ func integrated(n int, f, w []float64, steps int) (integral []float64, largest f
 			transition[i] += v
 			settled = settled && math.Abs(v) <= math.Abs(transition[i])*unitRoundoff/8
 		}
-		if k >= n && settled {
+		if k >= terms && settled {
 			break
 		}
 	}
