@@ -3,6 +3,7 @@
 package builtins
 
 import (
+	"gainwright/builtins/frequency"
 	"gainwright/builtins/gain"
 	"gainwright/builtins/matrix"
 	"gainwright/builtins/polynomial"
@@ -16,7 +17,7 @@ import (
 func Table() []*value.Builtin {
 	var all []*value.Builtin
 	for _, family := range [](func() []*value.Builtin){
-		matrix.Builtins, polynomial.Builtins, system.Builtins, reach.Builtins, gain.Builtins, sampling.Builtins,
+		matrix.Builtins, polynomial.Builtins, system.Builtins, reach.Builtins, gain.Builtins, sampling.Builtins, frequency.Builtins,
 	} {
 		all = append(all, family()...)
 	}

@@ -42,6 +42,15 @@ var kinds = []*value.Builtin{
 		Func: func(c *value.Call) (value.Value, error) { return value.AsFraction(plainValues(c.Args["v"])), nil },
 	},
 	{
+		Name: "si_number", Family: "matrix",
+		Params:  []value.Param{{Name: "x", Shape: value.Anything, Doc: "a quantity; a plain number is taken as it is"}},
+		Result:  "number",
+		Summary: "the plain number that a quantity is in SI units",
+		Doc:     "For use where a number without its unit is wanted, as in a matrix.", Examples: []value.Example{{Input: "si_number(20 mm)", Output: "= 0.02"}},
+		Errors: []string{"Hz, which is a frequency or a rate only where one is asked for"}, Source: "BIPM 2019, The International System of Units", SeeAlso: []string{"exact", "floating"},
+		Func: siNumber,
+	},
+	{
 		Name: "fields", Family: "matrix",
 		Params:  []value.Param{{Name: "v", Shape: value.Anything, Doc: "a report, plant, gain, model, study or response"}},
 		Result:  "report",
@@ -64,6 +73,15 @@ var kinds = []*value.Builtin{
 			return r, nil
 		},
 	},
+}
+
+// siNumber gives the plain number a quantity is in SI units.
+func siNumber(c *value.Call) (value.Value, error) {
+	if q, ok := value.Force(c.Args["x"]).(value.Quantity); ok {
+		return q.SI()
+	}
+	v, err := value.Coerce(value.Param{Name: "x", Shape: value.ANumber}, c.Args["x"])
+	return v, err
 }
 
 // plainValues gives a gain's matrix, and every other value as it is.

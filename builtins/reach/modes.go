@@ -21,7 +21,7 @@ var modeBuiltins = []*value.Builtin{
 		Params:  []value.Param{{Name: "plant", Shape: value.ASystem, Doc: "the plant"}},
 		Result:  "report, a row a mode",
 		Summary: "each mode: what moves it, what sees it, how it decays",
-		Doc: "A row a mode, slowest first, a conjugate pair or a repeated pole in one row. The verdict says how it behaves and whether it is moved and seen. " +
+		Doc: "A row a mode, slowest first, a conjugate pair or a repeated pole in one row. The verdict says how it behaves, and whether it is not moved or not seen. " +
 			"The strength after each name is |wᴴ·b| for inputs and |c·v| for outputs, with w and v the unit left and right eigenvectors, after scaling by the declared ranges " +
 			"of states, inputs and outputs; without ranges it is in these units and ranks nothing. Of a repeated pole the lengths of its chains are shown instead. " +
 			"Sampled poles are judged by p = ln z/T. Fields: poles, missing (moved by no input), unseen (seen by no output), and the table.",
@@ -288,40 +288,13 @@ func chains(p *value.Plant, rows []*mode) error {
 	return nil
 }
 
-// scaling gives 1/range factors of states, inputs and outputs when all are declared.
+// scaling gives the ranges of states, inputs and outputs when all are declared.
 func scaling(p *value.Plant) (r [3][]float64, ok bool) {
-	for i, s := range [][]value.Signal{p.States, p.Inputs, p.Outputs} {
-		var full bool
-		if r[i], full = ranges(s); !full {
-			// an output that is a state shares the state's range
-			if i != 2 {
-				return r, false
-			}
-			if r[i], full = outputRanges(p); !full {
-				return r, false
-			}
-		}
-	}
-	return r, len(p.States) > 0
-}
-
-func outputRanges(p *value.Plant) ([]float64, bool) {
-	out := make([]float64, len(p.Outputs))
-	for i, s := range p.Outputs {
-		if s.Range != nil {
-			out[i] = s.Range.Float64()
-			continue
-		}
-		for _, x := range p.States {
-			if x.Name == s.Name && x.Range != nil {
-				out[i] = x.Range.Float64()
-			}
-		}
-		if out[i] == 0 {
-			return nil, false
-		}
-	}
-	return out, true
+	var full [3]bool
+	r[0], full[0] = ranges(p.States)
+	r[1], full[1] = ranges(p.Inputs)
+	r[2], full[2] = rangesOr(p.Outputs, p.States)
+	return r, full[0] && full[1] && full[2] && len(p.States) > 0
 }
 
 // strengths fills in |wᴴ·b| and |c·v| of simple modes.
@@ -505,6 +478,9 @@ func (m *mode) verdict(sampled bool) string {
 			how += " (" + word + strings.Join(lengths, ", ") + ")"
 		}
 	}
+	if m.moved[0] == m.count && m.seen[0] == m.count {
+		return how
+	}
 	return how + "; " + m.access()
 }
 
@@ -522,9 +498,6 @@ func (m *mode) access() string {
 	moved, seen := state(m.moved, "moved"), state(m.seen, "seen")
 	if m.moved[0] == 0 && m.seen[0] == 0 {
 		return "neither moved nor seen"
-	}
-	if m.moved[0] == m.count && m.seen[0] == m.count {
-		return "moved and seen"
 	}
 	return moved + ", " + seen
 }

@@ -299,7 +299,7 @@ func (p *pair) directions() value.Value {
 func (p *pair) scaled() (a, b *mat.Dense, ranged bool) {
 	a, b = p.a.Dense(), p.b.Dense()
 	x, okX := ranges(p.states)
-	u, okU := ranges(p.signals)
+	u, okU := rangesOr(p.signals, p.states)
 	if !okX || !okU || len(x) == 0 {
 		return a, b, false
 	}
@@ -316,6 +316,22 @@ func (p *pair) scaled() (a, b *mat.Dense, ranged bool) {
 		b.Apply(func(i, j int, v float64) float64 { return v * u[j] / x[i] }, b)
 	}
 	return a, b, true
+}
+
+// rangesOr takes the range of a state of the same name where a signal declares none: an output that is a state shares it.
+func rangesOr(signals, states []value.Signal) ([]float64, bool) {
+	out := make([]float64, len(signals))
+	for i, s := range signals {
+		if s.Range == nil {
+			k := signalIndex(states, s.Name)
+			if k < 0 || states[k].Range == nil || states[k].Unit.Text != s.Unit.Text {
+				return nil, false
+			}
+			s = states[k]
+		}
+		out[i] = s.Range.Float64()
+	}
+	return out, true
 }
 
 func ranges(signals []value.Signal) ([]float64, bool) {
