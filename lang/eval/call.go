@@ -3,7 +3,6 @@ package eval
 import (
 	"context"
 	"errors"
-	"fmt"
 	"strings"
 
 	"gainwright/lang/diag"
@@ -136,23 +135,9 @@ func (s *Session) callBuiltin(f *frame, b *value.Builtin, site *callSite, args [
 	if err != nil {
 		return nil, err
 	}
-	call := &value.Call{
-		Context: f.task.ctx, Builtin: b, Args: make(map[string]value.Value, len(placed)), IsBare: bare,
-		Root: s.root, Note: f.task.note, Progress: s.progress, Charge: f.task.charge,
-		Apply: func(fn *value.Function, args ...value.Value) (value.Value, error) {
-			v, err := s.apply(f, fn, site, args)
-			if err != nil {
-				return nil, err
-			}
-			return v, nil
-		},
-	}
-	if call.Note == nil {
-		call.Note = func(string) {}
-	}
-	if call.Progress == nil {
-		call.Progress = func(int, int) {}
-	}
+	ties := &ties{task: f.task}
+	call := s.newCall(f, b, site, ties)
+	call.IsBare = bare
 	spans := make(map[string]diag.Span, len(placed))
 	for _, p := range placed {
 		v, err := p.coerce()
@@ -163,15 +148,12 @@ func (s *Session) callBuiltin(f *frame, b *value.Builtin, site *callSite, args [
 		spans[p.param.Name] = p.span
 	}
 	held := f.task.held
-	v, failure := protected(b, call)
-	if failure != nil {
-		if f.task.ctx.Err() != nil {
-			return nil, f.task.stopError().At(site.callee)
-		}
-		return nil, pointed(failure, b.Name, spans, site)
-	}
+	v, failure := f.task.interruptible(b.Name, ties, func() (value.Value, error) { return b.Func(call) })
 	if f.task.ctx.Err() != nil {
 		return nil, f.task.stopError().At(site.callee)
+	}
+	if failure != nil {
+		return nil, pointed(failure, b.Name, spans, site)
 	}
 	f.task.held = held
 	if err := f.task.charge(sizeOf(v)); err != nil {
@@ -180,22 +162,26 @@ func (s *Session) callBuiltin(f *frame, b *value.Builtin, site *callSite, args [
 	return v, nil
 }
 
-// protected runs a built-in; a panic of it or of a library below it becomes an error.
-func protected(b *value.Builtin, call *value.Call) (v value.Value, err error) {
-	defer func() {
-		if r := recover(); r != nil {
-			if cause, ok := r.(*diag.Error); ok {
-				v, err = nil, cause
-				return
+// newCall makes what a built-in is given.
+func (s *Session) newCall(f *frame, b *value.Builtin, site *callSite, ties *ties) *value.Call {
+	t := f.task
+	return &value.Call{
+		Context: t.ctx, Builtin: b, Args: map[string]value.Value{}, Root: s.root,
+		Note: func(text string) {
+			if t.note != nil {
+				ties.call(func() { t.note(text) })
 			}
-			v, err = nil, internal("computing "+b.Name, fmt.Errorf("panic: %v", r))
-		}
-	}()
-	v, err = b.Func(call)
-	if err == nil && v == nil {
-		err = internal("computing "+b.Name, errors.New("no value"))
+		},
+		Progress: func(done, total int) {
+			if s.progress != nil {
+				ties.call(func() { s.progress(done, total) })
+			}
+		},
+		Charge: ties.charge,
+		Apply: func(fn *value.Function, args ...value.Value) (value.Value, error) {
+			return ties.apply(func() (value.Value, *diag.Error) { return s.apply(f, fn, site, args) })
+		},
 	}
-	return v, err
 }
 
 // pointed places a built-in's error at the argument at fault, or at the call.

@@ -30,6 +30,7 @@ func builtins() []*value.Builtin {
 			return nil, value.Errf(diag.Numerical, "poles", "the mode at 3 cannot be moved")
 		}},
 		{Name: "wait", Params: []value.Param{number}, Func: func(c *value.Call) (value.Value, error) { <-c.Context.Done(); return nil, c.Context.Err() }},
+		{Name: "deaf", Params: []value.Param{number}, Func: func(c *value.Call) (value.Value, error) { time.Sleep(2 * time.Second); return value.Int(0), nil }},
 		{Name: "ones", Params: []value.Param{{Name: "n", Shape: value.AWhole}}, Func: ones},
 		{Name: "whole_numbers", Params: []value.Param{{Name: "n", Shape: value.AWhole}}, Func: wholeNumbers},
 		{Name: "frequency_of", Params: []value.Param{{Name: "frequency", Shape: value.AFrequency, Named: true}}, Func: func(c *value.Call) (value.Value, error) { return c.Number("frequency"), nil }},

@@ -65,9 +65,17 @@ func charged(f *frame, v value.Value, err error) (any, error) {
 
 func arithmetic(op func(a, b value.Value) (value.Value, error)) func(*frame, []any) (any, error) {
 	return func(f *frame, args []any) (any, error) {
-		v, err := op(args[0].(value.Value), args[1].(value.Value))
+		v, err := f.compute(op, args[0].(value.Value), args[1].(value.Value))
 		return charged(f, v, err)
 	}
+}
+
+// compute carries out an operation, interruptibly when it may take long.
+func (f *frame) compute(op func(a, b value.Value) (value.Value, error), a, b value.Value) (value.Value, error) {
+	if !heavy(a) && !heavy(b) {
+		return op(a, b)
+	}
+	return f.task.interruptible("this operation", nil, func() (value.Value, error) { return op(a, b) })
 }
 
 func unary(op func(a value.Value) (value.Value, error)) func(*frame, []any) (any, error) {
@@ -84,7 +92,7 @@ func multiply(f *frame, args []any) (any, error) {
 		return nil, err
 	}
 	f.task.held -= bytes
-	v, err := value.Multiply(a, b)
+	v, err := f.compute(value.Multiply, a, b)
 	return charged(f, v, err)
 }
 
@@ -140,7 +148,13 @@ func name(f *frame, args []any) (any, error) {
 }
 
 func field(f *frame, args []any) (any, error) {
-	v, err := value.Field(args[1].(value.Value), args[0].(string))
+	owner, name := args[1].(value.Value), args[0].(string)
+	if _, ok := owner.(*value.Report); !ok {
+		v, err := value.Field(owner, name)
+		return charged(f, v, err)
+	}
+	// A report's field may be worked out only now.
+	v, err := f.task.interruptible(name, nil, func() (value.Value, error) { return value.Field(owner, name) })
 	return charged(f, v, err)
 }
 

@@ -4,6 +4,7 @@ import (
 	"io/fs"
 	"os"
 	"sort"
+	"sync/atomic"
 
 	"github.com/expr-lang/expr/conf"
 
@@ -39,6 +40,8 @@ type Session struct {
 	journal []change
 	used    map[string]bool // files read by use, by their path below the root
 	using   []string        // files being read, outermost first
+
+	abandoned atomic.Int32 // computations given up that still run
 }
 
 // binding is what a name stands for and where it was bound.

@@ -265,6 +265,10 @@ func TestCancelStopsALoop(t *testing.T) {
 		"define f(n) = if n == 0 { 0 } else { f(n - 1) + f(n - 1) }\nf(100)",
 		"[[x * y for each x of whole_numbers(2000)] for each y of whole_numbers(100000)]",
 		"wait(1)",
+		"deaf(1)", // a built-in that does not look at its context
+		"define f(x) = deaf(x)\ntwice(f, 1)",
+		"define f(x) = if x > 0 { f(x + 1) + f(x) } else { 0 }\ntwice(f, 1)",
+		"A = ones(1900) * ones(1900)ᵀ\nA * A * A * A",
 	} {
 		// The best of several, because the machine may be busy with something else.
 		best := time.Hour
@@ -280,7 +284,7 @@ func TestCancelStopsALoop(t *testing.T) {
 // stopAfter cancels a run and tells how long it went on after that.
 func stopAfter(t *testing.T, text string, delay time.Duration) time.Duration {
 	ctx, cancel := context.WithCancel(context.Background())
-	s := eval.New(eval.Options{Builtins: builtins(), Limits: eval.Limits{Steps: -1}})
+	s := eval.New(eval.Options{Builtins: builtins(), Limits: eval.Limits{Steps: -1, Depth: 1_000_000}})
 	var stopped atomic.Int64
 	start := time.Now()
 	time.AfterFunc(delay, func() { stopped.Store(int64(time.Since(start))); cancel() })
