@@ -14,8 +14,8 @@ import (
 	"gonum.org/v1/gonum/mat"
 )
 
-// publishedCase is one entry of testdata/structure_published.json.
-type publishedCase struct {
+// structureCase is one entry of testdata/structure_published.json.
+type structureCase struct {
 	ID        string
 	Source    string
 	Inputs    map[string]json.RawMessage
@@ -23,18 +23,18 @@ type publishedCase struct {
 	Tolerance map[string]json.RawMessage
 }
 
-// publishedCases reads the cases whose id has the prefix.
-func publishedCases(t *testing.T, prefix string) []publishedCase {
+// structureCases reads the cases whose id has the prefix.
+func structureCases(t *testing.T, prefix string) []structureCase {
 	t.Helper()
 	data, err := os.ReadFile("testdata/structure_published.json")
 	if err != nil {
 		t.Fatal(err)
 	}
-	var file struct{ Cases []publishedCase }
+	var file struct{ Cases []structureCase }
 	if err := json.Unmarshal(data, &file); err != nil {
 		t.Fatal(err)
 	}
-	var out []publishedCase
+	var out []structureCase
 	for _, c := range file.Cases {
 		if strings.HasPrefix(c.ID, prefix) {
 			out = append(out, c)
@@ -131,7 +131,7 @@ func closedPoles(t *testing.T, a, b, k *mat.Dense) []complex128 {
 }
 
 func TestPublishedPlacement(t *testing.T) {
-	for _, c := range publishedCases(t, "pub-place-") {
+	for _, c := range structureCases(t, "pub-place-") {
 		t.Run(c.ID, func(t *testing.T) {
 			a, b := matrixOf(t, c.Inputs["A"]), matrixOf(t, c.Inputs["B"])
 			poles := complexList(t, c.Inputs["poles"], c.Inputs["pairs"] != nil)
@@ -168,17 +168,17 @@ func TestPublishedPlacement(t *testing.T) {
 				want = c.Expect["K_minimum_norm"]
 			}
 			for name, got := range map[string]*Placement{"one input": one, "robust": robust} {
-				if e := relativeError(matrixOf(t, want), got.K); e > 1e-12 {
+				if e := largestEntryError(matrixOf(t, want), got.K); e > 1e-12 {
 					t.Errorf("%s: gain off by %g: %v", name, e, mat.Formatted(got.K))
 				}
-				t.Logf("%s: error %.1e, digits %.1f", name, relativeError(matrixOf(t, want), got.K), got.Certificate.Digits)
+				t.Logf("%s: error %.1e, digits %.1f", name, largestEntryError(matrixOf(t, want), got.K), got.Certificate.Digits)
 			}
 		})
 	}
 }
 
-// relativeError is the largest entrywise difference relative to the largest entry.
-func relativeError(want, got *mat.Dense) float64 {
+// largestEntryError is the largest entrywise difference relative to the largest entry.
+func largestEntryError(want, got *mat.Dense) float64 {
 	rows, columns := want.Dims()
 	if r, c := got.Dims(); r != rows || c != columns {
 		return math.Inf(1)
