@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"io"
 	"sort"
+	"strings"
 
 	"github.com/spf13/cobra"
 
@@ -46,22 +47,26 @@ func (a *app) explain(args []string, all, asJSON, markdown bool) error {
 	if err != nil {
 		return err
 	}
+	o := a.look(a.out)
 	chosen, library := w.table, functions
 	if len(args) > 0 {
 		chosen, library = nil, nil
 		for _, word := range args {
 			b, f := w.find(word, functions)
+			statement, isStatement := render.StatementNamed(word)
 			switch {
 			case b != nil:
 				chosen = append(chosen, b)
 			case f != nil:
 				library = append(library, f)
+			case isStatement && len(args) == 1 && !asJSON && !markdown:
+				io.WriteString(a.out, render.ExplainStatement(statement, o))
+				return nil
 			default:
 				return usage(w.hint(word), "there is no word %s", word)
 			}
 		}
 	}
-	o := a.look(a.out)
 	switch {
 	case asJSON:
 		for _, b := range chosen {
@@ -70,6 +75,8 @@ func (a *app) explain(args []string, all, asJSON, markdown bool) error {
 		for _, f := range library {
 			a.out.Write(render.ExplainFunctionJSON(f))
 		}
+	case markdown && len(args) > 0:
+		io.WriteString(a.out, strings.TrimLeft(render.ReferenceEntries(chosen, library), "\n"))
 	case markdown:
 		io.WriteString(a.out, render.Reference(chosen, library))
 	case all || len(args) > 0:

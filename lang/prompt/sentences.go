@@ -8,40 +8,48 @@ import (
 	"regexp"
 	"strconv"
 	"strings"
+	"sync"
 
 	"gainwright/lang/diag"
 	"gainwright/lang/render"
 	"gainwright/lang/value"
 )
 
-// The sentences. None of them is an expression: two words do not follow each other in one.
-var (
-	explainSentence = regexp.MustCompile(`^explain\s+([\pL_][\pL\pM\pN_′]*)$`)
-	listSentence    = regexp.MustCompile(`^list\s+names$`)
-	backSentence    = regexp.MustCompile(`^take\s+back$`)
-	keepSentence    = regexp.MustCompile(`^keep\s+in\s+(\S.*)$`)
-	digitsSentence  = regexp.MustCompile(`^show\s+(\d{1,4})\s+digits?$`)
-	leaveSentence   = regexp.MustCompile(`^leave\s+session$`)
-)
+// sentences are the patterns of what the prompt knows besides statements. None of them is
+// an expression: two words do not follow each other in one. They are compiled when the
+// first line is read, since a file that is run needs none.
+type sentences struct{ explain, list, back, keep, digits, leave *regexp.Regexp }
+
+var patterns = sync.OnceValue(func() sentences {
+	return sentences{
+		explain: regexp.MustCompile(`^explain\s+([\pL_][\pL\pM\pN_′]*)$`),
+		list:    regexp.MustCompile(`^list\s+names$`),
+		back:    regexp.MustCompile(`^take\s+back$`),
+		keep:    regexp.MustCompile(`^keep\s+in\s+(\S.*)$`),
+		digits:  regexp.MustCompile(`^show\s+(\d{1,4})\s+digits?$`),
+		leave:   regexp.MustCompile(`^leave\s+session$`),
+	}
+})
 
 // most digits a binary64 number has
 const mostDigits = 17
 
 // sentence does what a sentence says; false when the text is none.
 func (t *talk) sentence(text string) bool {
+	p := patterns()
 	switch {
-	case leaveSentence.MatchString(text):
+	case p.leave.MatchString(text):
 		t.leaving = true
-	case listSentence.MatchString(text):
+	case p.list.MatchString(text):
 		t.listNames()
-	case backSentence.MatchString(text):
+	case p.back.MatchString(text):
 		t.takeBack()
-	case explainSentence.MatchString(text):
-		t.explain(explainSentence.FindStringSubmatch(text)[1])
-	case digitsSentence.MatchString(text):
-		t.showDigits(digitsSentence.FindStringSubmatch(text)[1])
-	case keepSentence.MatchString(text) && !t.isShowInUnit(text):
-		t.keep(strings.Trim(keepSentence.FindStringSubmatch(text)[1], `"`))
+	case p.explain.MatchString(text):
+		t.explain(p.explain.FindStringSubmatch(text)[1])
+	case p.digits.MatchString(text):
+		t.showDigits(p.digits.FindStringSubmatch(text)[1])
+	case p.keep.MatchString(text) && !t.isShowInUnit(text):
+		t.keep(strings.Trim(p.keep.FindStringSubmatch(text)[1], `"`))
 	default:
 		return false
 	}
@@ -129,6 +137,10 @@ func (t *talk) explain(word string) {
 	}
 	if ok {
 		fmt.Fprintf(t.Out, "%s is a %s: %s\n", word, v.Kind(), render.Summary(v, t.printer.Options))
+		return
+	}
+	if s, ok := render.StatementNamed(word); ok {
+		fmt.Fprint(t.Out, render.ExplainStatement(s, t.printer.Options))
 		return
 	}
 	err := diag.New(diag.Name, "there is no word %s", word)

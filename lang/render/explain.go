@@ -1,7 +1,6 @@
 package render
 
 import (
-	"fmt"
 	"sort"
 	"strings"
 
@@ -61,6 +60,11 @@ func Overview(table []*value.Builtin, library []*value.Function, o Options) stri
 		for _, b := range chapter.words {
 			e.para("  "+padRight(b.Name, w)+"  ", b.Summary)
 		}
+	}
+	e.blank()
+	e.add("Words of the language")
+	for _, s := range Statements() {
+		e.add("  " + padRight(s.Word, w) + "  " + s.Form)
 	}
 	if len(library) > 0 {
 		e.blank()
@@ -181,7 +185,7 @@ func paramText(p value.Param) string {
 	if p.Doc != "" {
 		parts = append(parts, strings.TrimRight(p.Doc, "."))
 	}
-	if w := shapeWords(p); w != "" && len(p.Choices) == 0 {
+	if w := shapeWords(p); w != "" && len(p.Choices) == 0 && (p.Doc == "" || saysUnit(p.Shape)) {
 		parts = append(parts, w)
 	}
 	if len(p.Choices) > 0 {
@@ -198,6 +202,11 @@ func paramText(p value.Param) string {
 		parts = append(parts, "may be left out")
 	}
 	return strings.Join(parts, "; ")
+}
+
+// saysUnit tells whether the words of a shape say more than what an argument is.
+func saysUnit(s value.Shape) bool {
+	return s == value.AFrequency || s == value.ATime || s == value.ARate || s == value.PoleList
 }
 
 func shapeWords(p value.Param) string {
@@ -288,121 +297,4 @@ func chapterTitle(family string) string {
 		return t
 	}
 	return strings.ToUpper(family[:min(1, len(family))]) + family[min(1, len(family)):]
-}
-
-// Reference is the reference page in Markdown.
-func Reference(table []*value.Builtin, library []*value.Function) string {
-	var b strings.Builder
-	b.WriteString("# Reference\n\nEvery word of the language, from the table that the program itself reads. ")
-	b.WriteString("This page is written by `gainwright explain --all --markdown`.\n")
-	for _, c := range chapters(table) {
-		fmt.Fprintf(&b, "\n## %s\n", chapterTitle(c.family))
-		for _, w := range c.words {
-			b.WriteString(referenceEntry(w))
-		}
-	}
-	if len(library) > 0 {
-		b.WriteString("\n## Written in the language itself\n")
-		for _, f := range library {
-			fmt.Fprintf(&b, "\n### `%s`\n\n`%s(%s)`\n\n%s\n", f.Name, f.Name, strings.Join(f.Params, ", "), markdownText(f.Doc))
-		}
-	}
-	return b.String()
-}
-
-func referenceEntry(w *value.Builtin) string {
-	var b strings.Builder
-	fmt.Fprintf(&b, "\n### `%s`\n\n%s.\n\n", w.Name, strings.TrimRight(markdownText(w.Summary), "."))
-	for _, s := range signatures(w) {
-		fmt.Fprintf(&b, "    %s\n", s)
-	}
-	b.WriteString("\n")
-	if params := allParams(w); len(params) > 0 {
-		b.WriteString("| argument | what it is |\n|---|---|\n")
-		for _, p := range params {
-			fmt.Fprintf(&b, "| `%s` | %s |\n", paramName(p), strings.ReplaceAll(markdownText(paramText(p)), "|", "\\|"))
-		}
-		b.WriteString("\n")
-	}
-	fmt.Fprintf(&b, "Gives %s.\n", strings.TrimRight(markdownText(w.Result), "."))
-	if doc := strings.TrimSpace(w.Doc); doc != "" {
-		fmt.Fprintf(&b, "\n%s\n", markdownText(doc))
-	}
-	for _, x := range w.Examples {
-		fmt.Fprintf(&b, "\n```\n%s\n", promptLines(x.Input))
-		if out := strings.TrimRight(x.Output, "\n"); out != "" {
-			fmt.Fprintf(&b, "%s\n", out)
-		}
-		b.WriteString("```\n")
-	}
-	if len(w.Errors) > 0 {
-		b.WriteString("\nRefuses:\n\n")
-		for _, e := range w.Errors {
-			fmt.Fprintf(&b, "- %s\n", markdownText(e))
-		}
-	}
-	if w.Source != "" && w.Source != "definition" {
-		fmt.Fprintf(&b, "\nSource: %s\n", markdownText(w.Source))
-	}
-	if len(w.SeeAlso) > 0 {
-		fmt.Fprintf(&b, "\nSee also: `%s`\n", strings.Join(w.SeeAlso, "`, `"))
-	}
-	return b.String()
-}
-
-func promptLines(input string) string {
-	return "» " + strings.ReplaceAll(input, "\n", "\n» ")
-}
-
-// markdownText keeps what Markdown would read as markup from being so read.
-func markdownText(s string) string {
-	return strings.NewReplacer("*", `\*`, "_", `\_`, "<", "&lt;", "[", `\[`, "]", `\]`).Replace(s)
-}
-
-type explainJSON struct {
-	Name     string        `json:"name"`
-	Family   string        `json:"family"`
-	Summary  string        `json:"summary"`
-	Calls    []string      `json:"calls"`
-	Params   []paramJSON   `json:"arguments"`
-	Result   string        `json:"result"`
-	Doc      string        `json:"doc"`
-	Examples []exampleJSON `json:"examples"`
-	Errors   []string      `json:"refuses"`
-	Source   string        `json:"source"`
-	SeeAlso  []string      `json:"see_also"`
-}
-
-type paramJSON struct {
-	Name     string   `json:"name"`
-	Named    bool     `json:"named"`
-	Optional bool     `json:"optional"`
-	Default  string   `json:"default,omitempty"`
-	Choices  []string `json:"choices,omitempty"`
-	Shape    string   `json:"shape,omitempty"`
-	Doc      string   `json:"doc"`
-}
-
-type exampleJSON struct {
-	Input  string `json:"input"`
-	Output string `json:"output"`
-}
-
-// ExplainJSON is a built-in as one line of JSON.
-func ExplainJSON(b *value.Builtin) []byte {
-	out := explainJSON{Name: b.Name, Family: b.Family, Summary: b.Summary, Calls: signatures(b), Params: []paramJSON{},
-		Result: b.Result, Doc: b.Doc, Examples: []exampleJSON{}, Errors: append([]string{}, b.Errors...),
-		Source: b.Source, SeeAlso: append([]string{}, b.SeeAlso...)}
-	for _, p := range allParams(b) {
-		out.Params = append(out.Params, paramJSON{p.Name, p.Named, p.Optional, p.Default, p.Choices, shapeWords(p), p.Doc})
-	}
-	for _, x := range b.Examples {
-		out.Examples = append(out.Examples, exampleJSON(x))
-	}
-	return encode(out)
-}
-
-// ExplainFunctionJSON is a function of the library as one line of JSON.
-func ExplainFunctionJSON(f *value.Function) []byte {
-	return encode(functionJSON{"function", f.Name, append([]string{}, f.Params...), f.Doc})
 }

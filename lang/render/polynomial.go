@@ -127,7 +127,11 @@ func ratioText(r value.Ratio, o Options) (string, sign) {
 	if den == "1" {
 		return num, s.both(t)
 	}
-	return factorText(num) + "/" + factorText(den), s.both(t)
+	// A product above needs no brackets, since * and / are read from the left.
+	if strings.Contains(num, " ") {
+		num = "(" + num + ")"
+	}
+	return num + "/" + factorText(den), s.both(t)
 }
 
 // factorText puts brackets around a sum or a product.

@@ -18,6 +18,9 @@ func force(v value.Value) value.Value {
 
 // layValue lays any value out.
 func layValue(v value.Value, in *value.Unit, o Options) laid {
+	if f, ok := v.(*value.Fractions); ok {
+		o.Fractions, v = true, f.Value
+	}
 	v = force(v)
 	if in != nil {
 		// What cannot be shown in the unit was refused when it was evaluated.
