@@ -21,7 +21,7 @@ var dampingBuiltins = func() []*value.Builtin {
 			Name: "least_damping", Family: "frequency", Params: params, Bare: bare,
 			Result: "number between −1 and 1", Summary: "the smallest damping ratio of all poles",
 			Doc:      "−Re p/|p|: 1 for a real pole that decays, 0 for an integrator or an undamped swing, negative for what grows. A sampled pole is judged by p = ln z/T; a pole at z = 0 counts 1.",
-			Examples: []value.Example{{Input: "least_damping([[0, 1], [-25, -6]])", Output: "≈ 0.6"}},
+			Examples: []value.Example{{Input: "least_damping([[0, 1], [-25, -6]])", Output: "≈ 0.60000"}},
 			Errors:   []string{"a plant without states"}, Source: "common practice", SeeAlso: []string{"slowest_decay", "modes"},
 			Func: func(c *value.Call) (value.Value, error) { return smallest(c, damping) },
 		},

@@ -16,7 +16,7 @@ var normBuiltins = []*value.Builtin{
 		Summary: "the largest gain over all frequencies (H∞ norm), with its frequency",
 		Doc: "The largest singular value of the frequency response, with the frequency in rad/s where it is met; low and high bracket it. " +
 			"In the declared units of inputs and outputs.",
-		Examples: []value.Example{{Input: "largest_gain(plant([[-1]], [[1]], [[1]])).value", Output: "≈ 1"}},
+		Examples: []value.Example{{Input: "largest_gain(plant([[-1]], [[1]], [[1]])).value", Output: "≈ 1.0000"}},
 		Errors:   []string{"a mode that does not decay, named: the gain is infinite or hides it"},
 		Source:   "Boyd & Balakrishnan 1990, Systems & Control Letters 15; Bruinsma & Steinbuch 1990", SeeAlso: []string{"noise_gain", "margins", "sweep"},
 		Func: largestGain,
@@ -28,7 +28,7 @@ var normBuiltins = []*value.Builtin{
 		Summary: "how strongly white noise passes: rms output for unit noise (H₂ norm)",
 		Doc: "The root of the summed output variances for independent unit white noise at all inputs: intensity 1 for a continuous plant, variance 1 for a sampled one. " +
 			"Infinite for a continuous plant with a direct term.",
-		Examples: []value.Example{{Input: "noise_gain(plant([[-2]], [[2]], [[1]]))", Output: "≈ 1"}},
+		Examples: []value.Example{{Input: "noise_gain(plant([[-2]], [[2]], [[1]]))", Output: "≈ 1.0000"}},
 		Errors:   []string{"a mode that does not decay, named"},
 		Source:   "Åström 1970, Introduction to Stochastic Control Theory", SeeAlso: []string{"largest_gain", "lyapunov", "kalman_gain"},
 		Func: noiseGain,

@@ -29,7 +29,7 @@ var sweepBuiltins = []*value.Builtin{
 		Summary: "the frequency response over a range: gain and phase of each channel",
 		Doc: "Fields: frequencies, values (complex numbers, or a matrix for each frequency with several channels), magnitude and phase of a single channel (plain ratio; degrees, without jumps). " +
 			"The table has decibels and degrees. Of a sampled plant the range must end at or below the Nyquist frequency. A frequency on a pole gives infinity.",
-		Examples: []value.Example{{Input: "sweep(1/(s + 1), from: 1, to: 1.001, points: 2).frequencies", Output: "≈ [1, 1.0010]"}},
+		Examples: []value.Example{{Input: "sweep(1/(s + 1), from: 1, to: 1.001, points: 2).frequencies", Output: "≈ [1.0000, 1.0010]"}},
 		Errors:   []string{"a range that is empty or starts at 0", "frequencies above the Nyquist frequency"},
 		Source:   "Laub 1981, IEEE Trans. Automatic Control 26", SeeAlso: []string{"margins", "at", "largest_gain"},
 		Func: sweep,

@@ -45,7 +45,7 @@ var assignBuiltins = []*value.Builtin{
 			"A mode that no input moves stays where it is if it is among the wanted poles, otherwise it is named in an error. " +
 			"Fields: values, poles (those the gain really gives, recomputed), sensitivity (condition of the eigenvectors), method, residual, condition.",
 		Examples: []value.Example{
-			{Input: "assign_poles([[0, 1], [0, 0]], [[0], [1]], [-1, -2]).values", Output: "= [[2, 3]]"},
+			{Input: "assign_poles([[0, 1], [0, 0]], [[0], [1]], [-1, -2]).values", Output: "=\n      x1   x2\n  u    2    3"},
 		},
 		Errors:  []string{"more or fewer poles than states", "a complex pole without its conjugate", "a mode that no input moves and that is not among the wanted poles", "bass-gura or ackermann with several inputs"},
 		Source:  "Bass & Gura 1965; Ackermann 1972; Kautsky, Nichols & Van Dooren 1985; Tits & Yang 1996",
@@ -248,29 +248,28 @@ func (t *task) refused(err error) error {
 		if rootErr != nil {
 			return rootErr
 		}
-		return fixedModes(system.List(roots), verb)
+		return fixedModes(roots, verb)
 	}
 	var refusal *numeric.Refusal
+	if errors.As(err, &refusal) && len(refusal.Modes) > 0 && !t.dual {
+		return value.Errf(diag.Numerical, "poles", "%v", refusal)
+	}
 	if errors.As(err, &refusal) && len(refusal.Modes) > 0 {
-		l := &value.List{}
-		for _, v := range refusal.Modes {
-			l.Items = append(l.Items, system.Root{Value: v, Err: cmplx.Abs(v) * 1e-12}.Number())
+		modes := make([]system.Root, len(refusal.Modes))
+		for i, v := range refusal.Modes {
+			modes[i] = system.Root{Value: v}
 		}
-		return value.Errf(diag.Numerical, "poles", "%s", refusal.Error())
+		return fixedModes(modes, verb)
 	}
 	return value.Errf(diag.Numerical, "poles", "%v", err)
 }
 
-func fixedModes(modes *value.List, verb string) error {
-	var words []string
-	for _, v := range modes.Items {
-		words = append(words, value.Describe(v))
+func fixedModes(modes []system.Root, verb string) error {
+	what, it := "the mode at %s stays where it is", "it"
+	if len(modes) > 1 {
+		what, it = "the modes at %s stay where they are", "them"
 	}
-	what := "the mode at " + words[0] + " stays where it is"
-	if len(words) > 1 {
-		what = "the modes at " + strings.Join(words, ", ") + " stay where they are"
-	}
-	return value.Errf(diag.Numerical, "poles", "%s: %s it", what, verb).
+	return value.Errf(diag.Numerical, "poles", what+": %s %s", system.RootText(modes), verb, it).
 		WithHelp("keep it among the wanted poles, or give the plant an actuator or sensor that reaches it; modes(…) shows what does")
 }
 

@@ -63,7 +63,7 @@ var betweenBuiltins = []*value.Builtin{
 		Summary: "weights of the samples that equal a continuous quadratic cost",
 		Doc:     "The integral of xᵀQx + uᵀRu + 2xᵀNu over one sample with the input held is quadratic in x and u at its start; these are its matrices.",
 		Examples: []value.Example{
-			{Input: "sampled_weights(plant([[0]], [[1]]), every: 1, states: [[1]], inputs: [[1]]).states", Output: "≈ [[1]]"},
+			{Input: "sampled_weights(plant([[0]], [[1]]), every: 1, states: [[1]], inputs: [[1]]).states", Output: "≈\n  1.0000"},
 		},
 		Errors:  []string{"a sampled plant", "weights whose sizes do not fit"},
 		Source:  "Van Loan 1978, IEEE Trans. Automatic Control 23",
@@ -97,7 +97,7 @@ var betweenBuiltins = []*value.Builtin{
 		Summary: "covariance that continuous process noise gathers over one sample",
 		Doc:     "∫ exp(A·t)·W·exp(Aᵀ·t) dt over one sample time.",
 		Examples: []value.Example{
-			{Input: "sampled_noise(plant([[0]], [[1]]), every: 2, process: [[3]])", Output: "≈ [[6]]"},
+			{Input: "sampled_noise(plant([[0]], [[1]]), every: 2, process: [[3]])", Output: "≈\n           x\n  x   6.0000"},
 		},
 		Errors:  []string{"a sampled plant", "an intensity that is not symmetric"},
 		Source:  "Van Loan 1978, IEEE Trans. Automatic Control 23",

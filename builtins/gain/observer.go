@@ -27,7 +27,7 @@ var observerBuiltins = []*value.Builtin{
 		Doc: "The dual of assign_poles: the poles are those of A − L·C. For a sampled plant x̂⁺ = A·x̂ + B·u + L·(y − ŷ) is the predictor; " +
 			"form \"current\" corrects x̂ by the newest y, x̂ = x̄ + L·(y − C·x̄), and gives A − L·C·A the wanted poles.",
 		Examples: []value.Example{
-			{Input: "observer_gain([[0, 1], [0, 0]], [[1, 0]], [-3, -4]).values", Output: "= [[7], [12]]"},
+			{Input: "observer_gain([[0, 1], [0, 0]], [[1, 0]], [-3, -4]).values", Output: "=\n        y\n  x1    7\n  x2   12"},
 		},
 		Errors:  []string{"more or fewer poles than states", "a mode that no output sees and that is not among the wanted poles", "the current form of a continuous plant"},
 		Source:  "Luenberger 1966, IEEE Trans. Automatic Control 11",
@@ -46,7 +46,7 @@ var observerBuiltins = []*value.Builtin{
 			"Inputs are the plant's inputs, then its outputs; outputs are the estimates of all states. Field gain is L, field transformation is T. " +
 			"The measured part passes straight through, noise and all.",
 		Examples: []value.Example{
-			{Input: "reduced_observer(plant([[0, 1, 0], [0, 0, 1], [-6, -11, -6]], [[0], [0], [1]], [[1, 0, 0]]), [-5, -6]).gain", Output: "= [[5], [-11]]"},
+			{Input: "reduced_observer(plant([[0, 1, 0], [0, 0, 1], [-6, -11, -6]], [[0], [0], [1]], [[1, 0, 0]]), [-5, -6]).gain", Output: "=\n    5\n  -11"},
 		},
 		Errors:  []string{"outputs that depend on each other", "more or fewer poles than n − p", "a mode that no output sees and that is not among the wanted poles"},
 		Source:  "Luenberger 1966, IEEE Trans. Automatic Control 11",

@@ -31,7 +31,7 @@ var optimalBuiltins = []*value.Builtin{
 			"Fields: values, poles, cost (the Riccati solution), residual, condition, sensitivity, method. " +
 			"Q may be indefinite where a stabilising solution exists; R of a sampled plant may be zero.",
 		Examples: []value.Example{
-			{Input: "quadratic_gain(plant([[0, 1], [0, 0]], [[0], [1]]), states: [[1, 0], [0, 2]], inputs: [[1]]).values", Output: "≈ [[1, 2]]"},
+			{Input: "quadratic_gain(plant([[0, 1], [0, 0]], [[0], [1]]), states: [[1, 0], [0, 2]], inputs: [[1]]).values", Output: "≈\n          x1       x2\n  u   1.0000   2.0000"},
 		},
 		Errors:  []string{"an unstable mode that no input moves, named", "a mode on the axis (circle) that no weight sees, named", "R that is not positive definite (continuous)", "weights that are not symmetric", "ranges that are not declared"},
 		Source:  "Kalman 1960, Bol. Soc. Mat. Mexicana 5; Laub 1979; Chu, Fan & Lin 2005; Van Loan 1978",
@@ -54,7 +54,7 @@ var optimalBuiltins = []*value.Builtin{
 		Doc: "Continuous: L = P·Cᵀ·V⁻¹. Sampled predictor: L = A·P·Cᵀ·(C·P·Cᵀ + V)⁻¹; form \"current\": L = P·Cᵀ·(C·P·Cᵀ + V)⁻¹, P the covariance before the measurement. " +
 			"Fields: values, poles (of the estimation error), cost (P), residual, condition, sensitivity, method.",
 		Examples: []value.Example{
-			{Input: "kalman_gain(plant([[0]], [[1]]), process: [[4]], measurement: [[1]]).values", Output: "≈ [[2]]"},
+			{Input: "kalman_gain(plant([[0]], [[1]]), process: [[4]], measurement: [[1]]).values", Output: "≈\n           y\n  x   2.0000"},
 		},
 		Errors:  []string{"an unstable mode that no output sees, named", "V that is not positive definite (continuous)", "intensities that are not symmetric"},
 		Source:  "Kalman & Bucy 1961, J. Basic Engineering 83; Kalman 1960, J. Basic Engineering 82",
@@ -76,7 +76,7 @@ var optimalBuiltins = []*value.Builtin{
 		Doc: "AᵀX + XA − (XB + N)R⁻¹(BᵀX + Nᵀ) + Q = 0, or AᵀXA − X − (AᵀXB + N)(R + BᵀXB)⁻¹(BᵀXA + Nᵀ) + Q = 0 when sampled. " +
 			"Fields: solution, gain, poles, residual, condition, method, last_step.",
 		Examples: []value.Example{
-			{Input: "riccati([[1]], [[1]], states: [[0]], inputs: [[1]]).solution", Output: "≈ [[2]]"},
+			{Input: "riccati([[1]], [[1]], states: [[0]], inputs: [[1]]).solution", Output: "≈\n  2.0000"},
 		},
 		Errors:  []string{"no stabilising solution, with the mode that stands against it"},
 		Source:  "Laub 1979, IEEE Trans. Automatic Control 24; Kleinman 1968; Chu, Fan & Lin 2005, Linear Algebra Appl. 396",

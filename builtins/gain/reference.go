@@ -21,7 +21,7 @@ var referenceBuiltins = []*value.Builtin{
 		Doc: "N inverts the closed loop's static gain, N = ((C − D·K)·(B·K − A)⁻¹·B + D)⁻¹; with fewer outputs than inputs the smallest N that does. " +
 			"It relies on the model's static gain: a plant that differs leaves an offset, which with_integrators removes.",
 		Examples: []value.Example{
-			{Input: "P = plant([[0, 1], [0, 0]], [[0], [1]], [[1, 0]])\nreference_gain(P, [[2, 3]]).values", Output: "= [[2]]"},
+			{Input: "P = plant([[0, 1], [0, 0]], [[0], [1]], [[1, 0]])\nreference_gain(P, [[2, 3]]).values", Output: "=\n      r_y\n  u     2"},
 		},
 		Errors:  []string{"a zero of the plant at s = 0 (at z = 1): y cannot follow a constant", "more outputs than inputs", "a closed loop with a pole there"},
 		Source:  "common practice",

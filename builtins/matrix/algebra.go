@@ -48,7 +48,7 @@ var builders = []*value.Builtin{
 	{
 		Name: "identity", Family: "matrix", Params: []value.Param{whole("n", "how many rows and columns")},
 		Result: "matrix n×n", Summary: "the identity matrix", Doc: "Exact.",
-		Examples: []value.Example{{Input: "identity(2)", Output: "= [[1, 0], [0, 1]]"}},
+		Examples: []value.Example{{Input: "identity(2)", Output: "=\n  1   0\n  0   1"}},
 		Errors:   []string{"a negative or too large n"}, Source: "definition", SeeAlso: []string{"filled", "diagonal"},
 		Func: func(c *value.Call) (value.Value, error) {
 			n, err := wholeArg(c, "n")
@@ -66,28 +66,28 @@ var builders = []*value.Builtin{
 		Params: []value.Param{{Name: "x", Shape: value.AReal, Doc: "the entry"},
 			{Name: "rows", Shape: value.AWhole, Named: true, Doc: "how many rows"}, {Name: "columns", Shape: value.AWhole, Named: true, Doc: "how many columns"}},
 		Result: "matrix", Summary: "a matrix with all entries equal", Doc: "Exact when the entry is.",
-		Examples: []value.Example{{Input: "filled(0, rows: 2, columns: 3)", Output: "= [[0, 0, 0], [0, 0, 0]]"}},
+		Examples: []value.Example{{Input: "filled(0, rows: 2, columns: 3)", Output: "=\n  0   0   0\n  0   0   0"}},
 		Errors:   []string{"a negative or too large size"}, Source: "definition", SeeAlso: []string{"identity"},
 		Func: filled,
 	},
 	{
 		Name: "diagonal", Family: "matrix", Params: any1("entries", value.Anything, "a list of numbers or a vector; of a square matrix its diagonal is taken"),
 		Result: "matrix n×n, or a list", Summary: "a diagonal matrix of entries, or the diagonal of a matrix", Doc: "Exact when the entries are.",
-		Examples: []value.Example{{Input: "diagonal([1, 2])", Output: "= [[1, 0], [0, 2]]"}},
+		Examples: []value.Example{{Input: "diagonal([1, 2])", Output: "=\n  1   0\n  0   2"}},
 		Errors:   []string{"entries that are no numbers"}, Source: "definition", SeeAlso: []string{"identity", "trace"},
 		Func: diagonal,
 	},
 	{
 		Name: "row", Family: "matrix", Params: []value.Param{{Name: "A", Shape: value.AMatrix, Doc: "a matrix"}, whole("i", "from 1")},
 		Result: "matrix with one row", Summary: "a row of a matrix", Doc: "Rows are counted from 1.",
-		Examples: []value.Example{{Input: "row([[1, 2], [3, 4]], 2)", Output: "= [[3, 4]]"}},
+		Examples: []value.Example{{Input: "row([[1, 2], [3, 4]], 2)", Output: "=\n  3   4"}},
 		Errors:   []string{"a row that is not there"}, Source: "definition", SeeAlso: []string{"column"},
 		Func: func(c *value.Call) (value.Value, error) { return slice(c, "i", true) },
 	},
 	{
 		Name: "column", Family: "matrix", Params: []value.Param{{Name: "A", Shape: value.AMatrix, Doc: "a matrix"}, whole("j", "from 1")},
 		Result: "matrix with one column", Summary: "a column of a matrix", Doc: "Columns are counted from 1.",
-		Examples: []value.Example{{Input: "column([[1, 2], [3, 4]], 2)", Output: "= [[2], [4]]"}},
+		Examples: []value.Example{{Input: "column([[1, 2], [3, 4]], 2)", Output: "=\n  2\n  4"}},
 		Errors:   []string{"a column that is not there"}, Source: "definition", SeeAlso: []string{"row"},
 		Func: func(c *value.Call) (value.Value, error) { return slice(c, "j", false) },
 	},
@@ -101,14 +101,14 @@ var builders = []*value.Builtin{
 	{
 		Name: "transpose", Family: "matrix", Params: any1("A", value.Anything, "a matrix, a system or a list"),
 		Result: "as A", Summary: "the transpose, also written Aᵀ", Doc: "Of a plant the dual system: (Aᵀ, Cᵀ, Bᵀ, Dᵀ).",
-		Examples: []value.Example{{Input: "transpose([[1, 2], [3, 4]])", Output: "= [[1, 3], [2, 4]]"}},
+		Examples: []value.Example{{Input: "transpose([[1, 2], [3, 4]])", Output: "=\n  1   3\n  2   4"}},
 		Errors:   []string{"a value that has no transpose"}, Source: "definition", SeeAlso: []string{"inverse"},
 		Func: func(c *value.Call) (value.Value, error) { return value.Transpose(c.Args["A"]) },
 	},
 	{
 		Name: "hadamard", Family: "matrix", Params: []value.Param{{Name: "A", Shape: value.AMatrix, Doc: "p×q"}, {Name: "B", Shape: value.AMatrix, Doc: "p×q"}},
 		Result: "matrix p×q", Summary: "the product entry by entry", Doc: "A*B is the matrix product; this is the other one.",
-		Examples: []value.Example{{Input: "hadamard([[1, 2]], [[3, 4]])", Output: "= [[3, 8]]"}},
+		Examples: []value.Example{{Input: "hadamard([[1, 2]], [[3, 4]])", Output: "=\n  3   8"}},
 		Errors:   []string{"sizes that differ"}, Source: "definition", SeeAlso: []string{"kronecker"},
 		Func: func(c *value.Call) (value.Value, error) {
 			a, b := c.Matrix("A"), c.Matrix("B")
@@ -123,7 +123,7 @@ var builders = []*value.Builtin{
 	{
 		Name: "kronecker", Family: "matrix", Params: []value.Param{{Name: "A", Shape: value.AMatrix, Doc: "p×q"}, {Name: "B", Shape: value.AMatrix, Doc: "r×s"}},
 		Result: "matrix pr×qs", Summary: "the Kronecker product: blocks a·B for each entry a of A", Doc: "Exact for exact data.",
-		Examples: []value.Example{{Input: "kronecker([[1, 2]], [[1], [1]])", Output: "= [[1, 2], [1, 2]]"}},
+		Examples: []value.Example{{Input: "kronecker([[1, 2]], [[1], [1]])", Output: "=\n  1   2\n  1   2"}},
 		Errors:   []string{"a result that is too large"}, Source: "definition", SeeAlso: []string{"hadamard"},
 		Func: func(c *value.Call) (value.Value, error) {
 			a, b := c.Matrix("A"), c.Matrix("B")
@@ -303,7 +303,7 @@ var algebra = []*value.Builtin{
 	},
 	{
 		Name: "inverse", Family: "matrix", Params: any1("A", value.Anything, "n×n, or a one-by-one system"), Result: "matrix n×n", Summary: "the inverse, also written A^-1; exact for an exact matrix",
-		Doc: "Prefer solve(A, b) where a product with the inverse is wanted.", Examples: []value.Example{{Input: "inverse([[1, 2], [3, 4]])", Output: "= [[-2, 1], [1.5, -0.5]]"}},
+		Doc: "Prefer solve(A, b) where a product with the inverse is wanted.", Examples: []value.Example{{Input: "inverse([[1, 2], [3, 4]])", Output: "=\n  -2      1\n   1.5   -0.5"}},
 		Errors: []string{"a singular matrix"}, Source: "Bareiss 1968; Higham 2002, Accuracy and Stability of Numerical Algorithms", SeeAlso: []string{"solve", "determinant"},
 		Func: func(c *value.Call) (value.Value, error) { return value.Power(plainValues(c.Args["A"]), value.Int(-1)) },
 	},
@@ -316,13 +316,13 @@ var algebra = []*value.Builtin{
 	{
 		Name: "norm", Family: "matrix", Params: []value.Param{{Name: "A", Shape: value.AMatrix, Doc: "a matrix or vector"}, {Name: "kind", Shape: value.AChoice, Choices: []string{"1", "2", "infinity", "frobenius"}, Optional: true, Default: "\"2\"", Doc: "which"}},
 		Result: "number", Summary: "a norm of a matrix or vector", Doc: "\"1\" largest column sum, \"infinity\" largest row sum (both exact for exact data), \"2\" largest singular value, \"frobenius\" root of the sum of squares.",
-		Examples: []value.Example{{Input: "norm([[3], [4]])", Output: "≈ 5"}},
+		Examples: []value.Example{{Input: "norm([[3], [4]])", Output: "≈ 5.0000"}},
 		Errors:   []string{"entries that are not finite"}, Source: "definition", SeeAlso: []string{"condition", "singular_values"},
 		Func: norm,
 	},
 	{
 		Name: "condition", Family: "matrix", Params: any1("A", value.AMatrix, "p×q"), Result: "number", Summary: "the condition number σ₁/σₙ; its decades are digits lost",
-		Doc: "In the 2-norm. Infinite for a singular matrix.", Examples: []value.Example{{Input: "condition(identity(3))", Output: "≈ 1"}},
+		Doc: "In the 2-norm. Infinite for a singular matrix.", Examples: []value.Example{{Input: "condition(identity(3))", Output: "≈ 1.0000"}},
 		Errors: []string{"entries that are not finite"}, Source: "Golub & Van Loan 2013, 2.6", SeeAlso: []string{"norm", "singular_values"},
 		Func: func(c *value.Call) (value.Value, error) {
 			k, cert, err := numeric.ConditionNumber(real2(c.Matrix("A")))
@@ -334,19 +334,19 @@ var algebra = []*value.Builtin{
 	},
 	{
 		Name: "singular_values", Family: "matrix", Params: any1("A", value.AMatrix, "p×q"), Result: "list, largest first", Summary: "the singular values",
-		Doc: "Each with the error that rounding the largest makes.", Examples: []value.Example{{Input: "singular_values([[3, 0], [0, 4]])", Output: "≈ [4, 3]"}},
+		Doc: "Each with the error that rounding the largest makes.", Examples: []value.Example{{Input: "singular_values([[3, 0], [0, 4]])", Output: "≈ [4.0000, 3.0000]"}},
 		Errors: []string{"entries that are not finite"}, Source: "Golub & Kahan 1965, SIAM J. Numerical Analysis 2", SeeAlso: []string{"norm", "condition", "rank"},
 		Func: singularValues,
 	},
 	{
 		Name: "exponential", Family: "matrix", Params: any1("A", value.ASquare, "n×n"), Result: "matrix n×n", Summary: "the matrix exponential e^A",
-		Doc: "Scaling and squaring with bounds from norms of powers; the diagonal of triangular matrices is recomputed. Exact only for a zero or an exactly nilpotent matrix.", Examples: []value.Example{{Input: "exponential([[0, 1], [0, 0]])", Output: "= [[1, 1], [0, 1]]"}},
+		Doc: "Scaling and squaring with bounds from norms of powers; the diagonal of triangular matrices is recomputed. Exact only for a zero or an exactly nilpotent matrix.", Examples: []value.Example{{Input: "exponential([[0, 1], [0, 0]])", Output: "=\n  1   1\n  0   1"}},
 		Errors: []string{"a matrix that is not square", "overflow"}, Source: "Al-Mohy & Higham 2009, SIAM J. Matrix Analysis 31", SeeAlso: []string{"exp", "sampled"},
 		Func: exponential,
 	},
 	{
 		Name: "eigenvectors", Family: "matrix", Params: any1("A", value.ASquare, "n×n"), Result: "matrix n×n, a column an eigenvalue in the order of eigenvalues(A)", Summary: "unit eigenvectors as columns",
-		Doc: "Floating, complex where the eigenvalues are. A note gives the condition of the matrix of vectors: when it is large they are nearly dependent.", Examples: []value.Example{{Input: "abs(eigenvectors([[2, 0], [0, 1]]))", Output: "≈ [[0, 1], [1, 0]]"}},
+		Doc: "Floating, complex where the eigenvalues are. A note gives the condition of the matrix of vectors: when it is large they are nearly dependent.", Examples: []value.Example{{Input: "abs(eigenvectors([[2, 0], [0, 1]]))", Output: "≈\n  0        1.0000\n  1.0000   0"}},
 		Errors: []string{"a matrix that is not square"}, Source: "Francis 1961; conditions: Wilkinson 1965", SeeAlso: []string{"eigenvalues", "modes"},
 		Func: eigenvectors,
 	},

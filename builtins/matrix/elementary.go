@@ -132,5 +132,5 @@ func fold(name, summary, input, output, errs string, seeAlso []string, f func(..
 var reductions = []*value.Builtin{
 	fold("min", "the least of several real numbers", "min(3, 1, 2)", "= 1", "complex numbers", []string{"max"}, value.Min),
 	fold("max", "the greatest of several real numbers", "max([3, 1, 2])", "= 3", "complex numbers", []string{"min"}, value.Max),
-	fold("sum", "the sum of several numbers", "sum([1/2, 1/3])", "= 5/6", "units that differ", []string{"min", "max"}, value.Sum),
+	fold("sum", "the sum of several numbers", "sum([1/2, 1/3])", "= 5/6 ≈ 0.83333", "units that differ", []string{"min", "max"}, value.Sum),
 }

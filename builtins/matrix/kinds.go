@@ -10,7 +10,7 @@ var kinds = []*value.Builtin{
 		Name: "exact", Family: "matrix",
 		Params:  []value.Param{{Name: "v", Shape: value.Anything, Doc: "a number, matrix, polynomial, transfer function, gain or list"}},
 		Result:  "the same value, exact",
-		Summary: "the kept exact value, shown in full; of a floating one what it is in binary",
+		Summary: "the kept exact value in full; of a floating one its binary digits",
 		Doc: "An exact value shown with its digits cut is shown whole. A floating number becomes the rational that its binary64 digits are, " +
 			"which is an exact statement about those digits and not about what they stand for.",
 		Examples: []value.Example{{Input: "exact(1/3)", Output: "= 1/3"}},
@@ -55,7 +55,7 @@ var kinds = []*value.Builtin{
 		Params:  []value.Param{{Name: "v", Shape: value.Anything, Doc: "a report, plant, gain, model, study or response"}},
 		Result:  "report",
 		Summary: "everything a value holds, by name",
-		Doc:     "What .name reads: for a gain also residual, condition and method.", Examples: []value.Example{{Input: "fields(2 + 3i)", Output: "real       = 2\nimaginary  = 3"}},
+		Doc:     "What .name reads: for a gain also residual, condition and method.", Examples: []value.Example{{Input: "fields(2 + 3i)", Output: "fields\n  real      = 2\n  imaginary = 3"}},
 		Errors: []string{"a value without fields"}, Source: "definition", SeeAlso: []string{"exact"},
 		Func: func(c *value.Call) (value.Value, error) {
 			v := c.Args["v"]

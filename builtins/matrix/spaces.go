@@ -58,13 +58,13 @@ func rankNote(d *numeric.RankDecision) string {
 var spaces = []*value.Builtin{
 	{
 		Name: "kernel", Family: "matrix", Params: any1("A", value.AMatrix, "p×q"), Result: "matrix q×k", Summary: "a basis of the vectors that A takes to zero, as columns",
-		Doc: "Exact by elimination; of a floating matrix orthonormal, with a note on how the rank was decided.", Examples: []value.Example{{Input: "kernel([[1, 2], [2, 4]])", Output: "= [[-2], [1]]"}},
+		Doc: "Exact by elimination; of a floating matrix orthonormal, with a note on how the rank was decided.", Examples: []value.Example{{Input: "kernel([[1, 2], [2, 4]])", Output: "=\n  -2\n   1"}},
 		Errors: []string{"entries that are not finite"}, Source: "Golub & Van Loan 2013, 5.5", SeeAlso: []string{"image", "rank"},
 		Func: func(c *value.Call) (value.Value, error) { return basis(c, true) },
 	},
 	{
 		Name: "image", Family: "matrix", Params: any1("A", value.AMatrix, "p×q"), Result: "matrix p×r", Summary: "a basis of the vectors that A reaches, as columns",
-		Doc: "Exact: the first independent columns; of a floating matrix orthonormal, with a note on how the rank was decided.", Examples: []value.Example{{Input: "image([[1, 2], [2, 4]])", Output: "= [[1], [2]]"}},
+		Doc: "Exact: the first independent columns; of a floating matrix orthonormal, with a note on how the rank was decided.", Examples: []value.Example{{Input: "image([[1, 2], [2, 4]])", Output: "=\n  1\n  2"}},
 		Errors: []string{"entries that are not finite"}, Source: "Golub & Van Loan 2013, 5.5", SeeAlso: []string{"kernel", "rank"},
 		Func: func(c *value.Call) (value.Value, error) { return basis(c, false) },
 	},
@@ -102,14 +102,14 @@ var equations = []*value.Builtin{
 		Name: "solve", Family: "matrix", Params: []value.Param{{Name: "A", Shape: value.AMatrix, Doc: "p×q"}, {Name: "b", Shape: value.AMatrix, Doc: "p×k"}},
 		Result: "matrix q×k", Summary: "the solution of A·x = b; says when it is least squares",
 		Doc:      "Exact for exact data with a solution; where it is not unique the one with the free unknowns zero is given and a note says so. An exact system without a solution, and every floating one that is not square and regular, is solved in least squares, with a note.",
-		Examples: []value.Example{{Input: "solve([[1, 2], [3, 4]], [5, 6])", Output: "= [[-4], [4.5]]"}},
+		Examples: []value.Example{{Input: "solve([[1, 2], [3, 4]], [5, 6])", Output: "=\n  -4\n   4.5"}},
 		Errors:   []string{"sizes that do not agree"}, Source: "Higham 2002, Accuracy and Stability of Numerical Algorithms, ch. 12 and 20", SeeAlso: []string{"inverse", "kernel"},
 		Func: solve,
 	},
 	{
 		Name: "sylvester", Family: "matrix", Params: []value.Param{{Name: "A", Shape: value.ASquare, Doc: "n×n"}, {Name: "B", Shape: value.ASquare, Doc: "m×m"}, {Name: "C", Shape: value.AMatrix, Doc: "n×m"}},
 		Result: "matrix n×m", Summary: "the solution X of A·X + X·B = C",
-		Doc: "Schur forms and a recursive triangular solve; the error estimate uses the separation of A and −B.", Examples: []value.Example{{Input: "sylvester([[1]], [[2]], [[6]])", Output: "≈ [[2]]"}},
+		Doc: "Schur forms and a recursive triangular solve; the error estimate uses the separation of A and −B.", Examples: []value.Example{{Input: "sylvester([[1]], [[2]], [[6]])", Output: "≈\n  2.0000"}},
 		Errors: []string{"A and −B with a common eigenvalue, named"}, Source: "Bartels & Stewart 1972; Jonsson & Kågström 2002, ACM TOMS 28", SeeAlso: []string{"lyapunov"},
 		Func: func(c *value.Call) (value.Value, error) {
 			a, b, q := c.Matrix("A"), c.Matrix("B"), c.Matrix("C")
@@ -131,7 +131,7 @@ var equations = []*value.Builtin{
 	{
 		Name: "lyapunov", Family: "matrix", Params: []value.Param{{Name: "A", Shape: value.ASquare, Doc: "n×n"}, {Name: "Q", Shape: value.ASquare, Doc: "n×n"}, {Name: "sampled", Shape: value.ABoolean, Named: true, Optional: true, Default: "false", Doc: "the discrete equation"}},
 		Result: "matrix n×n", Summary: "the solution X of A·X + X·Aᵀ + Q = 0, or A·X·Aᵀ − X + Q = 0",
-		Doc: "With sampled: true the second. Schur form and a recursive triangular solve; the error estimate uses the separation.", Examples: []value.Example{{Input: "lyapunov([[-1]], [[4]])", Output: "≈ [[2]]"}},
+		Doc: "With sampled: true the second. Schur form and a recursive triangular solve; the error estimate uses the separation.", Examples: []value.Example{{Input: "lyapunov([[-1]], [[4]])", Output: "≈\n  2.0000"}},
 		Errors: []string{"eigenvalues λ, μ of A with λ + μ = 0 (λ·μ = 1 when sampled), named"}, Source: "Bartels & Stewart 1972; Kitagawa 1977, Int. J. Control 25", SeeAlso: []string{"sylvester", "riccati", "noise_gain"},
 		Func: func(c *value.Call) (value.Value, error) {
 			a, q := c.Matrix("A"), c.Matrix("Q")

@@ -5,6 +5,7 @@ import (
 	"encoding/json"
 	"errors"
 	"math"
+	"math/big"
 	"math/cmplx"
 	"math/rand"
 	"os"
@@ -286,5 +287,160 @@ func TestPlacementSeedAndInvariance(t *testing.T) {
 	}
 	if ratio := third.Sensitivity / first.Sensitivity; ratio > 1.02 || ratio < 0.98 {
 		t.Errorf("κ %g before and %g after an orthogonal change of states", first.Sensitivity, third.Sensitivity)
+	}
+}
+
+// exactOneInputGain is J. Ackermann's formula over the rationals (Regelungstechnik
+// 1972): the last row of the inverse reachability matrix times p(A), for the very
+// binary64 numbers given.
+func exactOneInputGain(a, b *mat.Dense, poles []float64) []*big.Rat {
+	n, _ := a.Dims()
+	rational := func(v float64) *big.Rat { return new(big.Rat).SetFloat64(v) }
+	// Rows of the system Cᵀ·y = e_n: row i is (Aⁱb)ᵀ.
+	rows := make([][]*big.Rat, n)
+	column := make([]*big.Rat, n)
+	for i := range column {
+		column[i] = rational(b.At(i, 0))
+	}
+	for k := 0; k < n; k++ {
+		rows[k] = append(append([]*big.Rat(nil), column...), rational(0))
+		next := make([]*big.Rat, n)
+		for i := range next {
+			next[i] = new(big.Rat)
+			for j := range column {
+				next[i].Add(next[i], new(big.Rat).Mul(rational(a.At(i, j)), column[j]))
+			}
+		}
+		column = next
+	}
+	rows[n-1][n] = rational(1)
+	for k := 0; k < n; k++ {
+		pivot := k
+		for pivot < n && rows[pivot][k].Sign() == 0 {
+			pivot++
+		}
+		if pivot == n {
+			return nil
+		}
+		rows[k], rows[pivot] = rows[pivot], rows[k]
+		for i := 0; i < n; i++ {
+			if i == k || rows[i][k].Sign() == 0 {
+				continue
+			}
+			f := new(big.Rat).Quo(rows[i][k], rows[k][k])
+			for j := k; j <= n; j++ {
+				rows[i][j] = new(big.Rat).Sub(rows[i][j], new(big.Rat).Mul(f, rows[k][j]))
+			}
+		}
+	}
+	y := make([]*big.Rat, n)
+	for i := range y {
+		y[i] = new(big.Rat).Quo(rows[i][n], rows[i][i])
+	}
+	for _, p := range poles { // y ← y·(A − pI)
+		next := make([]*big.Rat, n)
+		for j := range next {
+			next[j] = new(big.Rat).Neg(new(big.Rat).Mul(rational(p), y[j]))
+			for i := range y {
+				next[j].Add(next[j], new(big.Rat).Mul(y[i], rational(a.At(i, j))))
+			}
+		}
+		y = next
+	}
+	return y
+}
+
+// The claimed digits of the one-input gain against the exact gain: never more
+// than one too many, over random problems of graded conditioning.
+func TestOneInputDigitsAreHonest(t *testing.T) {
+	random := rand.New(rand.NewSource(1994))
+	worst, modest, cases := 0.0, 0.0, 0
+	for trial := 0; trial < 240; trial++ {
+		n := 2 + random.Intn(6)
+		grade := math.Pow(10, -3*random.Float64())
+		a, b := gaussian(random, n, n), gaussian(random, n, 1)
+		switch trial % 3 {
+		case 1: // weakly coupled states
+			for i := 0; i < n; i++ {
+				for j := 0; j < n; j++ {
+					if i != j {
+						a.Set(i, j, a.At(i, j)*grade)
+					}
+				}
+				b.Set(i, 0, b.At(i, 0)*math.Pow(grade, random.Float64()))
+			}
+		case 2: // poles far away, states close together
+			for i := 0; i < n; i++ {
+				for j := 0; j < n; j++ {
+					a.Set(i, j, a.At(i, j)*grade)
+				}
+				a.Set(i, i, 1+a.At(i, i))
+			}
+		}
+		poles, wanted := make([]float64, n), make([]complex128, n)
+		for i := range poles {
+			poles[i] = -float64(1+random.Intn(9)) / 2
+			if trial%4 == 0 {
+				poles[i] = -2
+			}
+			wanted[i] = complex(poles[i], 0)
+		}
+		exact := exactOneInputGain(a, b, poles)
+		got, err := AssignOneInput(a, b, wanted)
+		if err != nil || exact == nil {
+			continue // numerically unreachable: refused
+		}
+		cases++
+		off, largest := new(big.Rat), new(big.Rat)
+		for i, k := range exact {
+			gap := new(big.Rat).Sub(k, new(big.Rat).SetFloat64(got.K.At(0, i)))
+			if gap.Abs(gap).Cmp(off) > 0 {
+				off = gap
+			}
+			if size := new(big.Rat).Abs(k); size.Cmp(largest) > 0 {
+				largest = size
+			}
+		}
+		e, _ := off.Quo(off, largest).Float64()
+		truth := math.Min(mostDigits, -math.Log10(math.Max(e, 1e-300)))
+		excess := got.Certificate.Digits - truth
+		worst, modest = math.Max(worst, excess), modest-excess
+		if excess > 1 {
+			t.Errorf("trial %d, n = %d: %.1f digits claimed, %.1f hold (condition %.1e)", trial, n, got.Certificate.Digits, truth, got.Certificate.Condition)
+		}
+	}
+	t.Logf("%d cases: at most %.2f digits too many, on average %.2f too few", cases, worst, modest/float64(cases))
+	if cases < 200 {
+		t.Errorf("only %d cases were judged", cases)
+	}
+}
+
+// States in units that differ by many powers of ten, with modes that no input
+// moves: the wanted poles are reached all the same, and the modes kept.
+func TestPlacementInOtherUnitsWithKeptModes(t *testing.T) {
+	random := rand.New(rand.NewSource(15))
+	for trial := 0; trial < 40; trial++ {
+		reached, hidden, inputs := 3+random.Intn(3), random.Intn(3), 1+random.Intn(3)
+		a, b, modes := hiddenPair(random, reached, hidden, inputs)
+		n := reached + hidden
+		a, b, _, _ = rescaled(random, a, b, mat.NewDense(1, n, nil), mat.NewDense(1, inputs, nil), float64(trial%5))
+		poles := append([]complex128{-2 + 1i, -2 - 1i}, modes...)
+		for len(poles) < n {
+			poles = append(poles, complex(-float64(len(poles)), 0))
+		}
+		got, err := AssignRobust(context.Background(), a, b, poles, 1)
+		if err != nil {
+			t.Errorf("trial %d: %v", trial, err)
+			continue
+		}
+		if len(got.Kept) != hidden {
+			t.Errorf("trial %d: kept %v, want %v", trial, got.Kept, modes)
+		}
+		if off := worstMatch(poles, closedPoles(t, a, b, got.K)); off > 1e-7 {
+			t.Errorf("trial %d (%d+%d states, %d inputs): poles off by %g, %v", trial, reached, hidden, inputs, off, got.Certificate)
+		}
+		if off := worstMatch(poles, got.Poles); off > 1e-7 {
+			t.Errorf("trial %d: reported poles off by %g", trial, off)
+		}
 	}
 }

@@ -141,15 +141,13 @@ func doubledIntegral(n int, f, w []float64, parts [][4]int) ([]float64, Certific
 		steps = int(math.Ceil(math.Log2(norm))) + 1
 	}
 	var results [2][]float64
-	transition := 1.0
 	for k := range results {
-		integral, largest := integrated(n, scaled, weight, steps+k, max(c.depth+1, min(n, smallOrder)))
+		integral := integrated(n, scaled, weight, steps+k, max(c.depth+1, min(n, smallOrder)))
 		results[k] = make([]float64, n*n)
 		undoCongruence(n, c, results[k], integral)
 		if !allFinite(results[k]) {
 			return nil, Certificate{}, overflowError(n, f)
 		}
-		transition = math.Max(transition, largest)
 	}
 	certificate := Certificate{Method: fmt.Sprintf("Taylor series of the integral and %d doublings", steps),
 		Condition: math.Max(1, oneNorm(n, scaled)), Digits: mostDigits}
@@ -190,9 +188,8 @@ func undoCongruence(n int, c *coupling, dst, w []float64) {
 }
 
 // integrated sums the series over 2^−steps, at least the given number of terms,
-// and doubles steps times; it returns the integral and the largest norm of the
-// transition matrix met.
-func integrated(n int, f, w []float64, steps, terms int) (integral []float64, largest float64) {
+// and doubles steps times.
+func integrated(n int, f, w []float64, steps, terms int) []float64 {
 	step := math.Ldexp(1, -steps)
 	integral, transition := make([]float64, n*n), make([]float64, n*n)
 	term, power, space := make([]float64, n*n), make([]float64, n*n), make([]float64, n*n)
@@ -218,7 +215,6 @@ func integrated(n int, f, w []float64, steps, terms int) (integral []float64, la
 		}
 	}
 	for range steps {
-		largest = math.Max(largest, oneNorm(n, transition))
 		multiply(blas.NoTrans, blas.NoTrans, n, n, n, 1, integral, n, transition, n, 0, space, n)
 		multiply(blas.Trans, blas.NoTrans, n, n, n, 1, transition, n, space, n, 0, term, n)
 		for i, v := range term {
@@ -228,7 +224,7 @@ func integrated(n int, f, w []float64, steps, terms int) (integral []float64, la
 		multiply(blas.NoTrans, blas.NoTrans, n, n, n, 1, transition, n, transition, n, 0, space, n)
 		transition, space = space, transition
 	}
-	return integral, largest
+	return integral
 }
 
 // addSymmetric sets term = x + xᵀ, adds it to sum, and tells whether it no

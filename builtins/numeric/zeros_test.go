@@ -141,6 +141,9 @@ func TestZerosAgainstExactReference(t *testing.T) {
 				}
 			}
 			t.Logf("%s (trial %d): worst %.1e, digits %.1f, gap %.1g / %.1g", c.Name, trial, worst, got.Certificate.Digits, got.Above, got.Below)
+			if truth := -math.Log10(math.Max(worst, 1e-300) / math.Max(largest, 1e-300)); largest > 0 && got.Certificate.Digits > truth+1 {
+				t.Errorf("%s (trial %d): %.1f digits claimed, %.1f hold", c.Name, trial, got.Certificate.Digits, truth)
+			}
 			if worst > 1e-8*math.Max(1, largest) {
 				t.Errorf("%s (trial %d): off by %g", c.Name, trial, worst)
 			}

@@ -21,7 +21,7 @@ var balanceBuiltins = []*value.Builtin{
 		Doc: "The states of the balanced form with the smallest Hankel singular values are left out. bound is twice the sum of the values left out: at no frequency does the " +
 			"gain of the difference exceed it. Modes that do not decay are split off first and kept as they are.",
 		Examples: []value.Example{
-			{Input: "poles(reduced(plant([[-1, 0], [0, -100]], [[1], [0.01]], [[1, 0.01]]), order: 1))", Output: "≈ [-1]"},
+			{Input: "poles(reduced(plant([[-1, 0], [0, -100]], [[1], [0.01]], [[1, 0.01]]), order: 1))", Output: "≈ [-1.0000]"},
 		},
 		Errors:  []string{"an order below the number of modes that do not decay, which are named", "an order above the plant's"},
 		Source:  "Moore 1981, IEEE Trans. Automatic Control 26; bound: Glover 1984, Int. J. Control 39",
@@ -35,7 +35,7 @@ var balanceBuiltins = []*value.Builtin{
 		Summary: "how much each state of the balanced form carries from input to output",
 		Doc:     "√λ(W·M) for the gramians W of reachability and M of observability. Each carries its own digits.",
 		Examples: []value.Example{
-			{Input: "hankel_singular_values(plant([[-1]], [[1]], [[1]]))", Output: "≈ [0.5]"},
+			{Input: "hankel_singular_values(plant([[-1]], [[1]], [[1]]))", Output: "≈ [0.50000]"},
 		},
 		Errors:  []string{"a mode that does not decay, named"},
 		Source:  "Moore 1981; Laub, Heath, Paige & Ward 1987, IEEE Trans. Automatic Control 32",

@@ -2,7 +2,6 @@ package reach
 
 import (
 	"fmt"
-	"math"
 	"math/cmplx"
 
 	"gonum.org/v1/gonum/mat"
@@ -29,7 +28,7 @@ var formBuiltins = []*value.Builtin{
 			"controller form and observer form: companion blocks, one a controllability (observability) index, exact for exact data. " +
 			"staircase form: what the inputs reach first, by an orthogonal T. balanced form: of a stable plant that is moved and seen, both gramians equal and diagonal.",
 		Examples: []value.Example{
-			{Input: "similar(plant([[0, 1], [-2, -3]], [[0], [1]], [[1, 0]]), \"modal form\").A", Output: "= [[-1, 0], [0, -2]]"},
+			{Input: "similar(plant([[0, 1], [-2, -3]], [[0], [1]], [[1, 0]]), \"modal form\").A", Output: "=\n  -1    0\n   0   -2"},
 		},
 		Errors:  []string{"a singular T", "controller form of a plant with a mode no input moves, named", "balanced form of a plant that is not stable"},
 		Source:  "Luenberger 1967, IEEE Trans. Automatic Control 12; balanced: Moore 1981, IEEE Trans. Automatic Control 26",
@@ -286,7 +285,7 @@ func companionForm(p *value.Plant, dual bool) (t, inverse *value.Matrix, err err
 		word, verb, who = "observer form", "sees", "output"
 	}
 	if d.rank < n {
-		return nil, nil, value.Errf(diag.Numerical, "plant", "no %s: there is a mode that no %s %s: %s", word, who, verb, rootText(d.missing))
+		return nil, nil, value.Errf(diag.Numerical, "plant", "no %s: there is a mode that no %s %s: %s", word, who, verb, system.RootText(d.missing))
 	}
 	t, err = luenbergerForm(q.a, q.b, d.indices)
 	if err != nil {
@@ -339,25 +338,4 @@ func luenbergerForm(a, b *value.Matrix, indices []int) (*value.Matrix, error) {
 		}
 	}
 	return system.Block(rows), ch.Err
-}
-
-func rootText(roots []system.Root) string {
-	text := ""
-	for i, r := range roots {
-		if i > 0 {
-			text += ", "
-		}
-		v := r.Value
-		switch {
-		case imag(v) == 0:
-			text += fmt.Sprintf("%.5g", real(v))
-		default:
-			sign := "+"
-			if imag(v) < 0 {
-				sign = "-"
-			}
-			text += fmt.Sprintf("%.5g %s %.5gi", real(v), sign, math.Abs(imag(v)))
-		}
-	}
-	return text
 }

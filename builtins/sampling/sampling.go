@@ -34,7 +34,7 @@ func Builtins() []*value.Builtin {
 				"bilinear: s = α(z − 1)/(z + 1), α = 2/T, or ω/tan(ωT/2) with exact_at: ω; for redesigning filters rather than for plants. " +
 				"A note warns of a sample time at which a mode is lost or nearly lost.",
 			Examples: []value.Example{
-				{Input: "sampled(plant([[0, 1], [0, 0]], [[0], [1]]), every: 0.1).A", Output: "≈ [[1, 0.1], [0, 1]]"},
+				{Input: "sampled(plant([[0, 1], [0, 0]], [[0], [1]]), every: 0.1).A", Output: "≈\n  1.0000   0.10000\n  0        1.0000"},
 			},
 			Errors:  []string{"a plant that is sampled already", "exact_at at or above the Nyquist frequency", "entries that overflow"},
 			Source:  "Franklin, Powell & Workman 1998, Digital Control of Dynamic Systems; exponential: Al-Mohy & Higham 2009",
@@ -50,7 +50,7 @@ func Builtins() []*value.Builtin {
 			Summary: "the continuous plant whose held samples are the given plant",
 			Doc:     "The inverse of sampled(…, between: \"hold\") by the principal logarithm of A: of all plants with these samples the one whose modes turn less than half a turn a sample.",
 			Examples: []value.Example{
-				{Input: "continuous(sampled(plant([[-2]], [[1]]), every: 0.1)).A", Output: "≈ [[-2]]"},
+				{Input: "continuous(sampled(plant([[-2]], [[1]]), every: 0.1)).A", Output: "≈\n  -2.0000"},
 			},
 			Errors:  []string{"a pole at z = 0 or on the negative axis, where no unique continuous plant exists", "a continuous plant"},
 			Source:  "Al-Mohy & Higham 2012, SIAM J. Scientific Computing 34",

@@ -16,7 +16,7 @@ var feedbackBuiltins = []*value.Builtin{
 		Params: []value.Param{
 			{Name: "plant", Shape: value.ASystem, Doc: "the plant with n states, m inputs, p outputs"},
 			{Name: "feedback", Shape: value.Anything, Doc: "a state-feedback gain K (m×n), or a system H from y to −u"},
-			{Name: "reference", Shape: value.AGain, Optional: true, Doc: "N (m×p): the law is u = −K·x + N·r"},
+			{Name: "reference", Shape: value.AGain, Optional: true, Default: "none: the input is u", Doc: "N (m×p): the law is u = −K·x + N·r"},
 		},
 		Result:  "plant",
 		Summary: "the closed loop under u = −K·x (+ N·r), or under u = −H·y",
@@ -80,7 +80,7 @@ var feedbackBuiltins = []*value.Builtin{
 			"For a sampled plant ξ⁺ = ξ + (r − y). The gain for the new states comes out negative when the plant's static gain is positive. " +
 			"closed(…) of the result has the references as further inputs.",
 		Examples: []value.Example{
-			{Input: "P = plant([[0, 1], [0, -1]], [[0], [1]], [[1, 0]], outputs: [\"y\"])\nassign_poles(with_integrators(P, [\"y\"]), [-2, -1 ± 1i]).values", Output: "= [[6, 3, -4]]"},
+			{Input: "P = plant([[0, 1], [0, -1]], [[0], [1]], [[1, 0]], outputs: [\"y\"])\nassign_poles(with_integrators(P, [\"y\"]), [-2, -1 ± 1i]).values", Output: "=\n      x1   x2   ∫y\n  u    6    3   -4"},
 		},
 		Errors:  []string{"a name that is no output and no state"},
 		Source:  "common practice",

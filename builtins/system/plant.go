@@ -26,7 +26,7 @@ var plantBuiltins = []*value.Builtin{
 		Doc: "All numbers are in the declared units of the signals; nothing is converted. With every it is sampled: x⁺ = A·x + B·u. " +
 			"A row given for B with one state, or a column for C with one output, is turned to fit. Working ranges scale strengths and distances.",
 		Examples: []value.Example{
-			{Input: "plant([[0, 1], [-2, -3]], [[0], [1]], [[1, 0]]).A", Output: "= [[0, 1], [-2, -3]]"},
+			{Input: "plant([[0, 1], [-2, -3]], [[0], [1]], [[1, 0]]).A", Output: "=\n   0    1\n  -2   -3"},
 		},
 		Errors:  []string{"sizes that do not agree; both are shown", "a number of names that is not the number of signals", "a name given twice"},
 		Source:  "Kalman 1963, J. SIAM Control 1",

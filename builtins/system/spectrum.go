@@ -1,6 +1,7 @@
 package system
 
 import (
+	"fmt"
 	"math"
 	"math/cmplx"
 	"sort"
@@ -242,4 +243,26 @@ func Refused(err error, param string) error {
 		return d
 	}
 	return diag.New(diag.Numerical, "%v", err).For(param)
+}
+
+// RootText writes roots in a sentence, to five digits.
+func RootText(roots []Root) string {
+	text := ""
+	for i, r := range roots {
+		if i > 0 {
+			text += ", "
+		}
+		v := r.Value
+		switch {
+		case imag(v) == 0:
+			text += fmt.Sprintf("%.5g", real(v))
+		default:
+			sign := "+"
+			if imag(v) < 0 {
+				sign = "-"
+			}
+			text += fmt.Sprintf("%.5g %s %.5gi", real(v), sign, math.Abs(imag(v)))
+		}
+	}
+	return text
 }

@@ -33,7 +33,7 @@ var transferBuiltins = []*value.Builtin{
 		Summary: "a plant of least order with the given transfer function",
 		Doc:     "Controller form for one input and one output; for several, the columns' forms reduced to what is moved and seen.",
 		Examples: []value.Example{
-			{Input: "realize(1/(s^2 + 3*s + 2)).A", Output: "= [[0, 1], [-2, -3]]"},
+			{Input: "realize(1/(s^2 + 3*s + 2)).A", Output: "=\n   0    1\n  -2   -3"},
 		},
 		Errors:  []string{"a transfer function that is not proper"},
 		Source:  "Kailath 1980, Linear Systems, ch. 2 and 6",
@@ -49,7 +49,7 @@ var transferBuiltins = []*value.Builtin{
 			"one that it keeps means the output grows without end, which is an error. It is the value of the transfer function there, " +
 			"whether or not the plant is stable.",
 		Examples: []value.Example{
-			{Input: "static_gain(plant([[0, 1], [-2, -3]], [[0], [1]], [[1, 0]]))", Output: "= [[0.5]]"},
+			{Input: "static_gain(plant([[0, 1], [-2, -3]], [[0], [1]], [[1, 0]]))", Output: "=\n        u\n  y   0.5"},
 		},
 		Errors:  []string{"an entry that integrates"},
 		Source:  "definition",
@@ -64,7 +64,7 @@ var transferBuiltins = []*value.Builtin{
 		Summary: "(sI − A)⁻¹ as a matrix of rational functions, exact when A is",
 		Doc:     "The adjugate over the characteristic polynomial, each entry reduced.",
 		Examples: []value.Example{
-			{Input: "resolvent([[0, 1], [0, 0]])", Output: "= [[1/s, 1/s^2], [0, 1/s]]"},
+			{Input: "resolvent([[0, 1], [0, 0]])", Output: "=\n  output 1 from input 1:   1/s\n  output 1 from input 2:   1/s^2\n  output 2 from input 1:   0\n  output 2 from input 2:   1/s"},
 		},
 		Errors:  []string{fmt.Sprintf("a matrix of more than %d rows", 2*ExactOrder)},
 		Source:  "Faddeev & Faddeeva 1963, Computational Methods of Linear Algebra",

@@ -103,7 +103,8 @@ func (a axis) position(v Value) (int, error) {
 	switch x := Force(v).(type) {
 	case Text:
 		for k, name := range a.names {
-			if name == string(x) {
+			// a label carries its unit: "x [m]"
+			if plain, _, _ := strings.Cut(name, " ["); name == string(x) || plain == string(x) {
 				return k, nil
 			}
 		}
