@@ -3,6 +3,7 @@
 package builtins
 
 import (
+	"gainwright/builtins/files"
 	"gainwright/builtins/frequency"
 	"gainwright/builtins/gain"
 	"gainwright/builtins/matrix"
@@ -17,7 +18,7 @@ import (
 func Table() []*value.Builtin {
 	var all []*value.Builtin
 	for _, family := range [](func() []*value.Builtin){
-		matrix.Builtins, polynomial.Builtins, system.Builtins, reach.Builtins, gain.Builtins, sampling.Builtins, frequency.Builtins,
+		matrix.Builtins, polynomial.Builtins, system.Builtins, reach.Builtins, gain.Builtins, sampling.Builtins, frequency.Builtins, files.Builtins,
 	} {
 		all = append(all, family()...)
 	}

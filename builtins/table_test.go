@@ -3,6 +3,7 @@ package builtins_test
 import (
 	"bytes"
 	"context"
+	"os"
 	"strings"
 	"testing"
 
@@ -74,7 +75,12 @@ func libraryNames(t *testing.T) map[string]bool {
 // shownBy runs a text and gives what its last statement shows, notes left out.
 func shownBy(t *testing.T, text string) string {
 	t.Helper()
-	session := eval.New(eval.Options{Builtins: builtins.Table(), Library: stdlib.Files})
+	root, err := os.OpenRoot("files") // the folder of the run, for the examples that read files
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer root.Close()
+	session := eval.New(eval.Options{Builtins: builtins.Table(), Library: stdlib.Files, Root: root})
 	var out bytes.Buffer
 	var last string
 	session.RunText(context.Background(), diag.NewSource("example", text), func(e eval.Event) {
