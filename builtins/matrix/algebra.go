@@ -2,7 +2,6 @@ package matrix
 
 import (
 	"math"
-	"math/big"
 
 	"gonum.org/v1/gonum/mat"
 
@@ -503,7 +502,7 @@ func exponential(c *value.Call) (value.Value, error) {
 		return nil, value.Errf(diag.Type, "A", "the exponential of a complex matrix is not offered; use [[real, -imaginary], [imaginary, real]]")
 	}
 	if m.IsExact() && n <= system.ExactOrder {
-		if e := nilpotentExponential(m.Exact()); e != nil {
+		if e := system.NilpotentExponential(m.Exact()); e != nil {
 			return value.ExactMatrix(e), nil
 		}
 	}
@@ -519,32 +518,6 @@ func exponential(c *value.Call) (value.Value, error) {
 		x.Err += mat.Norm(e, 1) * m.Err * float64(n) * math.Max(1, cert.Condition)
 	}
 	return x, nil
-}
-
-// nilpotentExponential is the finite series, or nil when no power up to n is zero.
-func nilpotentExponential(a *exact.Matrix) *exact.Matrix {
-	n, _ := a.Dims()
-	p := a.CharacteristicPolynomial()
-	for _, x := range p.Coefficients()[1:] {
-		if x.Sign() != 0 {
-			return nil
-		}
-	}
-	sum, term := exact.Identity(n), exact.Identity(n)
-	for k := 1; k <= n; k++ {
-		next, err := term.Mul(a)
-		if err != nil {
-			return nil
-		}
-		if next.IsZero() {
-			return sum
-		}
-		term = next.Scale(big.NewRat(1, int64(k)))
-		if sum, err = sum.Add(term); err != nil {
-			return nil
-		}
-	}
-	return sum
 }
 
 func eigenvectors(c *value.Call) (value.Value, error) {

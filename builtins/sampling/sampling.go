@@ -30,11 +30,11 @@ func Builtins() []*value.Builtin {
 			},
 			Result:  "sampled plant",
 			Summary: "the plant as a controller that samples it sees it",
-			Doc: "hold: the input is held between samples, A_d = exp(A·T), B_d = ∫exp(A·τ)dτ·B; exact at the samples. line: the input runs straight from sample to sample. " +
+			Doc: "hold: the input is held between samples, A_d = exp(A·T), B_d = ∫exp(A·τ)dτ·B; exact at the samples, and exact in its numbers for chains of integrators. line: the input runs straight from sample to sample. " +
 				"bilinear: s = α(z − 1)/(z + 1), α = 2/T, or ω/tan(ωT/2) with exact_at: ω; for redesigning filters rather than for plants. " +
 				"A note warns of a sample time at which a mode is lost or nearly lost.",
 			Examples: []value.Example{
-				{Input: "sampled(plant([[0, 1], [0, 0]], [[0], [1]]), every: 0.1).A", Output: "≈\n  1.0000   0.10000\n  0        1.0000"},
+				{Input: "sampled(plant([[0, 1], [0, 0]], [[0], [1]]), every: 0.1).A", Output: "=\n  1   0.1\n  0   1"},
 			},
 			Errors:  []string{"a plant that is sampled already", "exact_at at or above the Nyquist frequency", "entries that overflow"},
 			Source:  "Franklin, Powell & Workman 1998, Digital Control of Dynamic Systems; exponential: Al-Mohy & Higham 2009",
@@ -132,6 +132,11 @@ func sampled(c *value.Call) (value.Value, error) {
 			q.A, q.B, q.C, q.D = p.A, p.B, p.C, p.D
 			return q, nil
 		}
+		if exactHold(q, p, every) {
+			q.Title = "sampled with a hold"
+			q.Extra = []value.Named{{Name: heldFrom, Value: p}}
+			return q, nil
+		}
 		a, b, cert, err = numeric.Hold(p.A.Dense(), inputsOf(p.B, n), t)
 		q.Title = "sampled with a hold"
 		q.Extra = []value.Named{{Name: heldFrom, Value: p}}
@@ -157,6 +162,22 @@ func sampled(c *value.Call) (value.Value, error) {
 		q.X0 = nil
 	}
 	return q, nil
+}
+
+// exactHold samples chains of integrators, whose exponential is a finite series, over the rationals.
+func exactHold(q, p *value.Plant, every value.Number) bool {
+	n, m := system.PlantSize(p)
+	if !system.ExactPlant(p) || !every.IsExact() || n+m > system.ExactOrder {
+		return false
+	}
+	joined := system.Block([][]*value.Matrix{{p.A, p.B}, {system.Zero(m, n), system.Zero(m, m)}})
+	e := system.NilpotentExponential(joined.Exact().Scale(every.Exact))
+	if e == nil {
+		return false
+	}
+	x := value.ExactMatrix(e)
+	q.A, q.B, q.C, q.D = system.Slice(x, 0, n, 0, n), system.Slice(x, 0, n, n, n+m), p.C, p.D
+	return true
 }
 
 // inputsOf gives B, or nil for a plant without inputs.

@@ -2,6 +2,7 @@ package system
 
 import (
 	"math"
+	"math/big"
 
 	"gainwright/lang/diag"
 	"gainwright/lang/exact"
@@ -256,4 +257,30 @@ func Rational(m *value.Matrix) (*exact.Matrix, error) {
 		return nil, diag.New(diag.Numerical, "%v", err)
 	}
 	return x, nil
+}
+
+// NilpotentExponential is e^A by its finite series, or nil when A is not nilpotent.
+func NilpotentExponential(a *exact.Matrix) *exact.Matrix {
+	n, _ := a.Dims()
+	p := a.CharacteristicPolynomial()
+	for _, x := range p.Coefficients()[1:] {
+		if x.Sign() != 0 {
+			return nil
+		}
+	}
+	sum, term := exact.Identity(n), exact.Identity(n)
+	for k := 1; k <= n; k++ {
+		next, err := term.Mul(a)
+		if err != nil {
+			return nil
+		}
+		if next.IsZero() {
+			return sum
+		}
+		term = next.Scale(big.NewRat(1, int64(k)))
+		if sum, err = sum.Add(term); err != nil {
+			return nil
+		}
+	}
+	return sum
 }
