@@ -165,6 +165,9 @@ func (p *parser) signal(role string) Signal {
 			p.take()
 			s.Expr = p.expression()
 		default:
+			if t.kind == tokenWord && wordHelp[t.text] == "" {
+				p.failHere(t, role+" NAME in UNIT range R, …", "%s stands where in, range or the line's end is expected", t.text)
+			}
 			s.Span = p.from(s.Name.Span.Start)
 			return s
 		}
@@ -184,6 +187,8 @@ func (p *parser) around() Item {
 		if more {
 			p.take()
 			p.skipLines()
+		} else if t := p.raw(0); t.kind == tokenWord && t.text != "find" {
+			p.failHere(t, form, "a comma is missing after rest")
 		}
 	}
 	for more && !(p.raw(0).word("find") && !p.raw(1).is("=")) {

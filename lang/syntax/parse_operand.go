@@ -248,6 +248,9 @@ func (p *parser) choice() Expr {
 }
 
 func (p *parser) branch(form string) Expr {
+	if t := p.peek(); t.is("=") {
+		p.unexpected(t)
+	}
 	p.expectOpen("{", form)
 	p.enter(modeJoin, insideChoice)
 	x := p.expression()

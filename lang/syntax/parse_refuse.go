@@ -2,7 +2,6 @@ package syntax
 
 import (
 	"fmt"
-	"math/big"
 	"strings"
 	"unicode/utf8"
 
@@ -147,6 +146,8 @@ func (p *parser) missingOperand(t token) {
 		p.failHere(t, "", "a value is missing")
 	case t.ends():
 		p.failHere(t, "", "a value is missing after %s", after)
+	case len(p.open) == 0 && (t.is(")") || t.is("]") || t.is("}")):
+		p.failHere(t, "", "%s closes nothing", t.text)
 	case t.kind == tokenWord:
 		p.failHere(t, p.reservedHelp(t.text), "a value is missing before %s", t.text)
 	case t.is("%"):
@@ -248,97 +249,4 @@ func (p *parser) refuseSemicolon(t token) {
 		p.failHere(t, "entries are separated by commas, rows are lists: [[1, 2], [3, 4]]", "; separates no entries")
 	}
 	p.failHere(t, "a statement has a line of its own; values are shown unless they are bound to a name", "; has no meaning here")
-}
-
-// unexpectedWord refuses a word after a complete value.
-func (p *parser) unexpectedWord(t token) {
-	switch t.text {
-	case "in":
-		p.failHere(t, "EXPR in UNIT", "in UNIT stands only at the end of a statement that shows a value")
-	case "is":
-		p.failHere(t, "claim EXPR is LITERAL", "is belongs to a claim")
-	case "else":
-		p.failHere(t, "if C { A } else { B }", "else without its if")
-	case "for":
-		p.failHere(t, "[E for each x of L where C]", "for each stands after the only element of a list")
-	case "not":
-		p.failHere(t, "put (not …) in parentheses", "not stands only at the start of a condition")
-	case "over":
-		p.failHere(t, studyForm, "over belongs to a study, a schedule or sensitivity(…)")
-	}
-	p.missingOperator(t)
-}
-
-// wordHelp is the form of a statement or item whose first word was read as a name.
-var wordHelp = map[string]string{
-	"given":    "given NAME = VALUE stands in model NAME { … }",
-	"input":    "input … stands in model NAME { … } or diagram NAME { … }",
-	"output":   "output … stands in model NAME { … } or diagram NAME { … }",
-	"state":    "state … stands in model NAME { … }",
-	"let":      "let stands in model NAME { … }; elsewhere write NAME = EXPR",
-	"rate":     "rate NAME = EXPR stands in model NAME { … }",
-	"next":     "next NAME = EXPR stands in model NAME { … }",
-	"around":   "around … stands in model NAME { … }",
-	"every":    "every T stands in model NAME { … }",
-	"use":      `use "file.gain"`,
-	"model":    "model NAME { … }",
-	"diagram":  "diagram NAME { … }",
-	"study":    studyForm,
-	"schedule": scheduleForm,
-	"define":   `define f(x, y) = EXPR, "what it gives"`,
-}
-
-// missingOperator refuses two values side by side.
-func (p *parser) missingOperator(t token) {
-	before, after := p.written(p.prev.span), p.written(t.span)
-	if t.kind == tokenNumber {
-		after = shortened(t.text)
-	}
-	for word, help := range wordHelp {
-		if p.prev.word(word) {
-			p.failHere(t, help, "an operator is missing between %s and %s", before, after)
-		}
-	}
-	if p.prev.is(")") || p.prev.is("]") || p.prev.is("%") {
-		before = "…"
-	}
-	separated := p.holds(insideList) || p.holds(insideIndex) || p.holds(insideCall)
-	switch {
-	case separated && p.holds(insideList):
-		p.failHere(t, "entries are separated by commas, rows are lists: [[1, 2], [3, 4]]", "a comma or an operator is missing between %s and %s", before, after)
-	case separated:
-		p.failHere(t, "", "a comma or an operator is missing between %s and %s", before, after)
-	case t.is("(") || t.is("["):
-		p.failHere(t, "a product is written with *", "an operator is missing between %s and %s", p.written(p.prev.span), after)
-	case t.kind == tokenQuote:
-		p.failHere(t, "", "an operator is missing before the text in quotes")
-	case t.kind == tokenWord && p.prev.kind != tokenNumber:
-		p.failHere(t, "a product is written "+before+" * "+after+"; a unit stands only after a number", "an operator is missing between %s and %s", p.written(p.prev.span), after)
-	}
-	p.failHere(t, "a product is written "+before+" * "+after, "an operator is missing between %s and %s", p.written(p.prev.span), after)
-}
-
-// noteDivisor remarks that the unit in 1/100 s belongs to the 100.
-func (p *parser) noteDivisor(b *Binary) {
-	r, ok := b.R.(*Number)
-	if !ok || r.Unit == nil || p.scan.text[r.Span.Start] == '(' {
-		return
-	}
-	x, sign := b.L, ""
-	if u, ok := x.(*Unary); ok && u.Op == "-" {
-		x, sign = u.X, "-"
-	}
-	l, ok := x.(*Number)
-	if !ok || l.Unit != nil || r.Value.Sign() == 0 || len(l.Text)+len(r.Text) > ordinaryDigits {
-		return
-	}
-	unit := r.Unit.Text
-	meant := fmt.Sprintf("%s%s %s / %s", sign, l.Text, unit, r.Text)
-	quotient := new(big.Rat).Quo(l.Value, r.Value)
-	if places, exact := quotient.FloatPrec(); exact && places <= 12 && quotient.Num().BitLen() < 64 {
-		meant = sign + quotient.FloatString(places) + " " + unit
-	}
-	p.file.Notes = append(p.file.Notes, Note{Span: b.Span, Text: fmt.Sprintf(
-		"%s is %s%s/(%s %s), because a unit belongs to its number; for the other reading write %s",
-		p.written(b.Span), sign, l.Text, r.Text, unit, meant)})
 }

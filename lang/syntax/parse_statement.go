@@ -205,9 +205,12 @@ func (p *parser) definition() Statement {
 		}
 		seen[param.Name] = true
 		d.Params = append(d.Params, param)
-		if t := p.peek(); t.is(",") {
+		switch t := p.peek(); {
+		case t.is(","):
 			p.take()
-		} else if !t.is(")") {
+		case t.is("="):
+			p.failHere(t, form, "a parameter has no value of its own")
+		case !t.is(")"):
 			p.unexpected(t)
 		}
 	}

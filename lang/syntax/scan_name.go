@@ -94,4 +94,5 @@ var afterNumber = map[string]bool{
 	"where": true, "of": true, "each": true, "to": true, "from": true, "over": true, "at": true,
 	"samples": true, "seed": true, "range": true, "every": true, "find": true, "steps": true,
 	"model": true, "true": true, "false": true,
+	"given": true, "input": true, "state": true, "output": true, "let": true, "rate": true, "next": true, "around": true,
 }
