@@ -56,7 +56,7 @@ const balancedSpread = 1024
 // smallest of the gains that do (in balanced coordinates, where those serve).
 func AssignOneInput(a, b *mat.Dense, poles []complex128) (*Placement, error) {
 	if _, m := sizeOf(b); m != 1 {
-		return nil, fmt.Errorf("B has %d columns; this method is for one input", m)
+		return nil, fmt.Errorf("%s has %d columns; this method is for one input", "B", m)
 	}
 	task, err := newAssignment(a, b, poles)
 	if err != nil {
@@ -288,7 +288,11 @@ func (t *assignment) takeOut(mode complex128, tolerance float64) bool {
 	if need == 2 && imag(mode) <= tolerance {
 		first := complex(real(mode), 0)
 		before := append([]wantedPole(nil), t.wanted...)
-		if t.takeOut(first, 2*tolerance) && t.takeOut(first, 2*tolerance) {
+		taken := 0
+		for taken < 2 && t.takeOut(first, 2*tolerance) {
+			taken++
+		}
+		if taken == 2 {
 			return true
 		}
 		t.wanted = before

@@ -76,7 +76,7 @@ func Observability(a, c *mat.Dense, tol float64) (*StaircaseForm, error) {
 	}
 	n, _ := sizeOf(a)
 	if p, columns := sizeOf(c); p > 0 && columns != n {
-		return nil, fmt.Errorf("C is %d×%d; it must have %d columns", p, columns, n)
+		return nil, fmt.Errorf("%s is %d×%d; it must have %d columns", "C", p, columns, n)
 	}
 	if err := Finite("C", c); err != nil {
 		return nil, err
@@ -130,7 +130,7 @@ func checkPair(a, b *mat.Dense) error {
 	}
 	n, _ := sizeOf(a)
 	if rows, m := sizeOf(b); m > 0 && rows != n {
-		return fmt.Errorf("B is %d×%d; it must have %d rows", rows, m, n)
+		return fmt.Errorf("%s is %d×%d; it must have %d rows", "B", rows, m, n)
 	}
 	return Finite("B", b)
 }

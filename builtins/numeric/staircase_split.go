@@ -43,7 +43,7 @@ func KalmanSplit(a, b, c *mat.Dense) (*Split, error) {
 	_, m := sizeOf(b)
 	p, columns := sizeOf(c)
 	if p > 0 && columns != n {
-		return nil, fmt.Errorf("C is %d×%d; it must have %d columns", p, columns, n)
+		return nil, fmt.Errorf("%s is %d×%d; it must have %d columns", "C", p, columns, n)
 	}
 	if err := Finite("C", c); err != nil {
 		return nil, err
@@ -69,7 +69,6 @@ type splitBases struct {
 	unseen        []float64 // n×(n−seen): basis of the unobservable subspace
 	threshold     float64
 	above, below  float64
-	notes         []string
 }
 
 // minimalPart finds how many states are moved and seen, with the orthogonal q

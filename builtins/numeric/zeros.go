@@ -101,7 +101,7 @@ func newStateSpace(a, b, c, d *mat.Dense) (*stateSpace, error) {
 	if n == 0 {
 		p, m = sizeOf(d)
 	} else if p > 0 && columns != n {
-		return nil, fmt.Errorf("C is %d×%d; it must have %d columns", p, columns, n)
+		return nil, fmt.Errorf("%s is %d×%d; it must have %d columns", "C", p, columns, n)
 	}
 	if err := Finite("C", c); err != nil {
 		return nil, err
