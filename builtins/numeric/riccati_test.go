@@ -4,29 +4,13 @@ import (
 	"context"
 	"encoding/json"
 	"errors"
-	"fmt"
 	"math"
-	"math/big"
 	"os"
 	"strings"
 	"testing"
 
 	"gonum.org/v1/gonum/mat"
 )
-
-// number reads a JSON number, or a string that holds an exact fraction.
-type number float64
-
-func (x *number) UnmarshalJSON(data []byte) error {
-	text := strings.Trim(string(data), `"`)
-	r, ok := new(big.Rat).SetString(text)
-	if !ok {
-		return fmt.Errorf("%q is no number", text)
-	}
-	f, _ := r.Float64()
-	*x = number(f)
-	return nil
-}
 
 // table is a matrix in a JSON file.
 type table [][]number
