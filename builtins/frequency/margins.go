@@ -400,6 +400,14 @@ func orInfinite(x float64) value.Value {
 	return value.FloatErr(x, math.Abs(x)*1e-13)
 }
 
+// inSeconds gives a time its unit; a time that nothing limits stays infinite.
+func inSeconds(v value.Value) value.Value {
+	if n, ok := v.(value.Number); ok {
+		return value.Quantity{Magnitude: n, Unit: value.Second()}
+	}
+	return v
+}
+
 func (s *marginSet) report(r *value.Report, channels bool) {
 	r.Columns = []string{"frequency [rad/s]", "kind", "factor", "degrees", "delay [s]"}
 	if channels {
@@ -425,7 +433,7 @@ func (s *marginSet) report(r *value.Report, channels bool) {
 		down = *s.down
 	}
 	r.Fields = []value.Named{{Name: "factor_up", Value: up}, {Name: "factor_down", Value: down},
-		{Name: "degrees", Value: orInfinite(s.degrees)}, {Name: "delay", Value: orInfinite(s.delay)}}
+		{Name: "degrees", Value: orInfinite(s.degrees)}, {Name: "delay", Value: inSeconds(orInfinite(s.delay))}}
 }
 
 // distanceToMinusOne is 1/‖(I + L)⁻¹‖∞ of a stable loop.

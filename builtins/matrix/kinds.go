@@ -10,11 +10,11 @@ var kinds = []*value.Builtin{
 		Name: "exact", Family: "matrix",
 		Params:  []value.Param{{Name: "v", Shape: value.Anything, Doc: "a number, matrix, polynomial, transfer function, gain or list"}},
 		Result:  "the same value, exact",
-		Summary: "the kept exact value in full; of a floating one its binary digits",
-		Doc: "An exact value shown with its digits cut is shown whole. A floating number becomes the rational that its binary64 digits are, " +
-			"which is an exact statement about those digits and not about what they stand for.",
+		Summary: "the exact value that is kept behind a shortened display",
+		Doc: "A value marked `exact kept` was shown with its digits cut; this shows it whole, as fractions where its decimals do not end. " +
+			"A floating value has no exact one; round(x, decimals: n) makes one.",
 		Examples: []value.Example{{Input: "exact(1/3)", Output: "= 1/3"}},
-		Errors:   []string{"a value without numbers"}, Source: "definition", SeeAlso: []string{"floating", "fraction"},
+		Errors:   []string{"a floating value, which keeps no exact one", "a value without numbers"}, Source: "definition", SeeAlso: []string{"floating", "fraction"},
 		Func: func(c *value.Call) (value.Value, error) {
 			v, err := value.Exactly(plainValues(c.Args["v"]))
 			if err != nil {
@@ -37,7 +37,7 @@ var kinds = []*value.Builtin{
 		Params:  []value.Param{{Name: "v", Shape: value.Anything, Doc: "an exact value"}},
 		Result:  "the same value, shown as fractions",
 		Summary: "shows an exact value as fractions",
-		Doc:     "24/109 rather than 0.22018. A floating value has no fraction; exact(v) gives that of its binary digits.", Examples: []value.Example{{Input: "fraction(0.12)", Output: "= 3/25"}},
+		Doc:     "24/109 rather than 0.22018. A floating value is shown as it is.", Examples: []value.Example{{Input: "fraction(0.12)", Output: "= 3/25"}},
 		Errors: []string{"a floating value"}, Source: "definition", SeeAlso: []string{"exact"},
 		Func: func(c *value.Call) (value.Value, error) { return value.AsFraction(plainValues(c.Args["v"])), nil },
 	},

@@ -1,9 +1,10 @@
 package numeric
 
 import (
+	"cmp"
 	"math"
 	"math/cmplx"
-	"sort"
+	"slices"
 
 	"gonum.org/v1/gonum/mat"
 )
@@ -75,11 +76,13 @@ func (t *assignment) examine(placement *Placement, reduced *reducedGain) error {
 		var change mat.Dense
 		change.Mul(t.inputMap, placement.K)
 		loop.Sub(loop, &change)
-		values, err := singularValues(placement.K)
-		if err != nil {
-			return err
+		if placement.Norm = mat.Norm(placement.K, 2); m > 1 { // of one row that is the 2-norm
+			values, err := singularValues(placement.K)
+			if err != nil {
+				return err
+			}
+			placement.Norm = values[0]
 		}
-		placement.Norm = values[0]
 	}
 	if err := Finite("A − B·K", loop); err != nil {
 		return &Refusal{Reason: "the gain that these poles need is beyond the range of numbers"}
@@ -208,7 +211,9 @@ func matchPoles(wanted, values []complex128) []int {
 			couples = append(couples, couple{i, j, cmplx.Abs(p - v)})
 		}
 	}
-	sort.SliceStable(couples, func(a, b int) bool { return couples[a].gap < couples[b].gap })
+	slices.SortFunc(couples, func(a, b couple) int {
+		return cmp.Or(cmp.Compare(a.gap, b.gap), cmp.Compare(a.i, b.i), cmp.Compare(a.j, b.j))
+	})
 	order := make([]int, len(wanted))
 	for i := range order {
 		order[i] = -1
@@ -242,6 +247,6 @@ next:
 		}
 		groups = append(groups, poleGroup{w, 1})
 	}
-	sort.SliceStable(groups, func(i, j int) bool { return groups[i].count > groups[j].count })
+	slices.SortStableFunc(groups, func(a, b poleGroup) int { return cmp.Compare(b.count, a.count) })
 	return groups
 }

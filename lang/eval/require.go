@@ -129,11 +129,28 @@ func (j *judge) comparison(e *syntax.Binary) (*Requirement, *diag.Error) {
 	if err != nil {
 		return nil, err
 	}
+	left, right = inUnitOf(left, right, e.L), inUnitOf(right, left, e.R)
 	outcome, failure := compareSides(e.Op, left, right)
 	if failure != nil {
 		return nil, asError(failure, "require").At(e.At).In(j.source)
 	}
 	return outcome, nil
+}
+
+// inUnitOf reads a bound typed without a unit in the other side's, where that is the SI
+// unit itself: a settling time below 2 is one below 2 s. A computed plain number is never
+// read so, since a slip of units could hide in it.
+func inUnitOf(v, other value.Value, typed syntax.Expr) value.Value {
+	if minus, ok := typed.(*syntax.Unary); ok && minus.Op == "-" {
+		typed = minus.X
+	}
+	literal, isLiteral := typed.(*syntax.Number)
+	n, isNumber := value.Force(v).(value.Number)
+	q, isQuantity := value.Force(other).(value.Quantity)
+	if !isLiteral || literal.Unit != nil || !isNumber || !isQuantity || !q.Unit.IsCoherent() {
+		return v
+	}
+	return value.Quantity{Magnitude: n, Unit: q.Unit}
 }
 
 func compareSides(op string, left, right value.Value) (*Requirement, error) {

@@ -35,6 +35,11 @@ func None() Unit { return Unit{Scale: big.NewRat(1, 1)} }
 // IsNone tells whether the unit is that of plain numbers (rad and deg are not, though they have no dimension).
 func (u Unit) IsNone() bool { return u.Text == "" && u.Dim == Dimension{} }
 
+// IsCoherent tells whether the unit is one of the SI without a factor: s, N*m, rad/s, but not ms or rpm.
+func (u Unit) IsCoherent() bool {
+	return u.Pi == 0 && u.Offset == nil && !u.hertz && u.scale().Cmp(ratOne) == 0
+}
+
 // IsHertz tells whether the unit is Hz, with or without a prefix.
 func (u Unit) IsHertz() bool { return u.hertz }
 
