@@ -113,13 +113,9 @@ func widest(texts []string) int {
 	return w
 }
 
-// alignedFigures writes figures in one notation, scientific as soon as one needs it,
-// with the points aligned.
+// alignedFigures writes figures with the points aligned; those that are too small or too
+// large to be read otherwise in scientific notation.
 func alignedFigures(figures []figure, imaginary bool) []string {
-	scientific := false
-	for _, f := range figures {
-		scientific = scientific || f.wantsScientific()
-	}
 	texts := make([]string, len(figures))
 	before, after := make([]string, len(figures)), make([]string, len(figures))
 	wide := 0
@@ -130,7 +126,7 @@ func alignedFigures(figures []figure, imaginary bool) []string {
 		switch {
 		case imaginary && f.fraction != "":
 			texts[i] = f.imaginaryText()
-		case scientific:
+		case f.wantsScientific():
 			texts[i] = f.scientific()
 		default:
 			texts[i] = f.fixed()

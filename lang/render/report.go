@@ -14,11 +14,7 @@ func layReport(r *value.Report, o Options) laid {
 	if r.Holds != nil {
 		l.word = strconv.FormatBool(*r.Holds)
 	}
-	small, large := bySize(r.Fields, len(r.Columns) > 0, o)
-	l.lines = append(l.lines, layNamed(small, o.narrower(2))...)
-	if len(large) > 0 {
-		l.lines = append(l.lines, hanging("further  ", strings.Join(large, ", "), o.width()-2)...)
-	}
+	l.lines = append(l.lines, fieldLines(r.Fields, len(r.Columns) > 0, o)...)
 	if len(r.Columns) > 0 {
 		if len(l.lines) > 0 {
 			l.lines = append(l.lines, "")
@@ -28,6 +24,16 @@ func layReport(r *value.Report, o Options) laid {
 		l.lines = append(l.lines, t.lines(o.width()-2)...)
 	}
 	return l
+}
+
+// fieldLines shows the small fields and names the large ones.
+func fieldLines(fields []value.Named, hasTable bool, o Options) []string {
+	small, large := bySize(fields, hasTable, o)
+	lines := layNamed(small, o.narrower(2))
+	if len(large) > 0 {
+		lines = append(lines, hanging("further  ", strings.Join(large, ", "), o.width()-2)...)
+	}
+	return lines
 }
 
 // bySize parts the fields of a report: those that take lines of their own are only named,

@@ -62,7 +62,7 @@ func layPlant(p *value.Plant, o Options) laid {
 		l.lines = append(l.lines, hanging("around ", text, o.width()-2)...)
 		l.sign = l.sign.both(s)
 	}
-	l.lines = append(l.lines, layNamed(p.Extra, o.narrower(2))...)
+	l.lines = append(l.lines, fieldLines(p.Extra, true, o)...)
 	return l
 }
 
