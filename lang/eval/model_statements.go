@@ -2,13 +2,31 @@ package eval
 
 import (
 	"gainwright/lang/diag"
+	"gainwright/lang/model"
 	"gainwright/lang/syntax"
 )
 
 // The statements that make and vary models.
 
-func (r *run) runModel(_ *task, _ *diag.Source, st *syntax.Model) *diag.Error {
-	return notBuilt("model", st.Span)
+// runModel builds a model and binds it.
+func (r *run) runModel(t *task, src *diag.Source, st *syntax.Model) *diag.Error {
+	note, err := r.session.mayBind(src, st.Name)
+	if err != nil {
+		return err
+	}
+	m, err := model.Build(src, st, &surroundings{session: r.session, task: t})
+	if err != nil {
+		return err
+	}
+	v := m.Value()
+	r.bound(src, st.Span, st.Name, v, "", oneLine(sliceOf(src, st.Span)))
+	if note != "" {
+		r.remark(src, st.Name.Span, note)
+	}
+	for _, n := range m.Notes {
+		r.remark(src, st.Name.Span, st.Name.Name+": "+n)
+	}
+	return nil
 }
 
 func (r *run) runDiagram(_ *task, _ *diag.Source, st *syntax.Diagram) *diag.Error {
