@@ -141,7 +141,11 @@ func (d *riccatiData) search(ctx context.Context) (*riccatiState, error) {
 		x, err := start(ctx)
 		if err == nil {
 			var s *riccatiState
-			if s, err = d.newton(ctx, x); err == nil {
+			s, err = d.newton(ctx, x, false)
+			if (err == errNotStabilising || err == errNotSettled) && d.n <= doubledOrderLimit {
+				s, err = d.newton(ctx, x, true)
+			}
+			if err == nil {
 				s.regularised = i == len(starts)-1
 				return s, nil
 			}

@@ -27,7 +27,7 @@ type riccatiState struct {
 }
 
 var (
-	errNotStabilising = errors.New("no stabilising solution of the Riccati equation was found: the closed loop of the candidate is not stable")
+	errNotStabilising = errors.New("no stabilising solution of the Riccati equation was found: the closed loop of the candidate is not stable, or the problem is too ill-conditioned for binary64")
 	errNotSettled     = errors.New("the Newton steps for the Riccati equation did not settle")
 	errNoStart        = errors.New("no stabilising solution of the Riccati equation was found")
 )
@@ -38,8 +38,10 @@ const mostNewtonSteps = 60
 
 // newton improves x. Each step solves a Lyapunov (Stein) equation with the
 // closed loop; a second step after a small first one keeps its Schur form.
-func (d *riccatiData) newton(ctx context.Context, x []float64) (*riccatiState, error) {
-	s := &riccatiState{x: x, method: d.method}
+//
+// doubly takes the residuals in doubled precision from the start.
+func (d *riccatiData) newton(ctx context.Context, x []float64, doubly bool) (*riccatiState, error) {
+	s := &riccatiState{x: append([]float64(nil), x...), method: d.method, doubled: doubly}
 	n := d.n
 	dx := make([]float64, n*n)
 	previous := math.Inf(1)
