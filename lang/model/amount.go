@@ -229,12 +229,3 @@ func toSI(n value.Number, u value.Unit) (amount, error) {
 	}
 	return a.add(offsetOf(u))
 }
-
-// fromSI expresses an amount in a unit.
-func fromSI(a amount, u value.Unit) (amount, error) {
-	a, err := a.subtract(offsetOf(u))
-	if err != nil {
-		return amount{}, err
-	}
-	return a.divide(conversion(u))
-}

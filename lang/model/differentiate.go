@@ -19,7 +19,6 @@ type differentiator struct {
 	g      *graph
 	states int
 	of     [][]derivative
-	tooBig bool
 }
 
 // mostDerivatives bounds the size of the written-out program.

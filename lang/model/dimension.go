@@ -128,30 +128,3 @@ func (d dimension) String() string {
 	}
 	return strings.Join(parts, "*")
 }
-
-// ratesUnit is the unit of a state's rate: the state's declared unit per second, written
-// in the state's own terms ("mm" gives "mm/s", "rad/s" gives "rad/s^2").
-func ratesUnit(u value.Unit) value.Unit {
-	if u.IsNone() {
-		return u
-	}
-	text := u.Text
-	over, under, divided := strings.Cut(text, "/")
-	switch {
-	case u.Offset != nil:
-		text = "K/s"
-	case !divided:
-		text += "/s"
-	case under == "s":
-		text = over + "/s^2"
-	case under == "s^2" || under == "s²":
-		text = over + "/s^3"
-	case strings.HasPrefix(under, "("):
-		text = over + "/" + strings.TrimSuffix(under, ")") + "*s)"
-	default:
-		text = over + "/(" + strings.ReplaceAll(under, "/", "*") + "*s)"
-	}
-	out := value.Unit{Text: text, Dim: u.Dim, Scale: u.Scale, Pi: u.Pi}
-	out.Dim[2]--
-	return out
-}

@@ -191,7 +191,7 @@ func (b *builder) rate(i int, item *syntax.Rate) id {
 		if !item.Next {
 			b.refuseCelsius(t, "a rate")
 			unit.Offset = nil
-			want, wanted = want.times(second, -1), ratesUnit(unit).Text
+			want, wanted = want.times(second, -1), unit.PerSecond().Text
 			if s.Unit.Offset != nil {
 				wanted = "K/s"
 			}

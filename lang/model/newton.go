@@ -108,6 +108,11 @@ func (s *solver) misses(e *Evaluator) float64 {
 			s.size[k] += s.p.plan.scales[i]
 		}
 	}
+	return s.merit()
+}
+
+// merit is half the square sum of the residuals in the sizes found last.
+func (s *solver) merit() float64 {
 	sum := 0.0
 	for k, f := range s.residual {
 		if s.size[k] > 0 {
@@ -116,6 +121,20 @@ func (s *solver) misses(e *Evaluator) float64 {
 		sum += f * f / 2
 	}
 	return sum
+}
+
+// trial evaluates the residuals alone; the sizes stay, so that the trials of one search
+// are comparable.
+func (s *solver) trial(e *Evaluator) float64 {
+	e.load(e.x, e.u)
+	e.run(s.p.rates.steps)
+	for k, i := range s.p.plan.equations {
+		s.residual[k] = e.registers[s.p.rates.results[i]]
+		if s.p.sampled {
+			s.residual[k] -= e.x[i]
+		}
+	}
+	return s.merit()
 }
 
 // restful tells whether every residual is nothing beside what moves it.
@@ -150,11 +169,10 @@ func (s *solver) newton(e *Evaluator, k int) bool {
 			return false
 		}
 		s.direction(e, k)
-		next, moved := s.search(e, k, miss)
-		if !moved {
+		if !s.search(e, k, miss) {
 			break
 		}
-		miss = next
+		miss = s.misses(e)
 	}
 	s.misses(e)
 	return s.restful(e)
@@ -188,7 +206,7 @@ func (s *solver) direction(e *Evaluator, k int) {
 }
 
 // search goes along the step until the residuals shrink; false when they do not.
-func (s *solver) search(e *Evaluator, k int, miss float64) (float64, bool) {
+func (s *solver) search(e *Evaluator, k int, miss float64) bool {
 	free := s.p.plan.free[k]
 	move := func(t float64) {
 		for j, v := range free {
@@ -203,14 +221,12 @@ func (s *solver) search(e *Evaluator, k int, miss float64) (float64, bool) {
 	t := 1.0
 	move(t)
 	for range mostHalvings {
-		next := s.misses(e)
-		if next < miss*(1-1e-4*t) {
-			return next, true
+		if s.trial(e) < miss*(1-1e-4*t) {
+			return true
 		}
 		move(-t / 2)
 		t /= 2
 	}
 	move(-t)
-	s.misses(e)
-	return miss, false
+	return false
 }

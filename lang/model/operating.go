@@ -194,6 +194,7 @@ func (b *builder) findListed(p point) point {
 		return p
 	}
 	if q, ok := b.newtonFrom(p, set, equations); ok {
+		b.otherRests(p, q, set, equations)
 		return q
 	}
 	b.failRest(p, [][]int{set}, equations, startError)
@@ -263,7 +264,7 @@ func (b *builder) starts(p point, set []int) [][]float64 {
 	for k := 1; k < count; k++ {
 		next := append([]float64{}, first...)
 		for j, v := range set {
-			next[v] += (2*radicalInverse(k, primes[j%len(primes)]) - 1) * b.scale(v)
+			next[v] += (1 - 2*radicalInverse(k, primes[j%len(primes)])) * b.scale(v)
 		}
 		out = append(out, next)
 	}
@@ -293,12 +294,43 @@ func (b *builder) settle(p point, e *Evaluator, set, equations []int) (point, bo
 	if ok, _ := b.rests(exactly, equations); ok && b.isExactlyAtRest(exactly, equations) {
 		return exactly, true
 	}
-	for j, spread := range b.spread(rounded, e, set, equations) {
-		n := rounded.variable(set[j])
-		*n = value.FloatErr(n.F, spread)
+	spreads := b.spread(rounded, e, set, equations)
+	certain := b.determined(exactly, set, equations)
+	for j, v := range set {
+		n := rounded.variable(v)
+		if certain[v] {
+			*n = *exactly.variable(v)
+			continue
+		}
+		*n = value.FloatErr(n.F, spreads[j])
 	}
 	ok, _ := b.rests(rounded, equations)
 	return rounded, ok
+}
+
+// determined lists the variables whose exact values satisfy an equation exactly that uses
+// no others of the set: a velocity that must be zero is zero.
+func (b *builder) determined(p point, set, equations []int) map[int]bool {
+	out := map[int]bool{}
+	r, err := b.residuals(b.g.evaluate(p, false, b.rates...), p)
+	if err != nil {
+		return out
+	}
+	for _, i := range equations {
+		if !r[i].IsExact() || !r[i].IsZero() {
+			continue
+		}
+		var users []int
+		for _, v := range set {
+			if b.dependsOn(b.rates[i], []int{v}) || b.Every != nil && v == i {
+				users = append(users, v)
+			}
+		}
+		if len(users) == 1 {
+			out[users[0]] = true
+		}
+	}
+	return out
 }
 
 func (b *builder) isExactlyAtRest(p point, equations []int) bool {
@@ -515,7 +547,7 @@ func (m *Model) rateUnit(i int) string {
 	if m.Every != nil {
 		return u.Text
 	}
-	return ratesUnit(u).Text
+	return u.PerSecond().Text
 }
 
 // bestMiss repeats the search and keeps the point nearest to rest; nil when the equations

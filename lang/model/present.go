@@ -179,7 +179,7 @@ func (m *Model) rateReport() *value.Report {
 	for i, n := range m.operating.rates {
 		u := m.States[i].Unit
 		if m.Every == nil {
-			u = ratesUnit(u)
+			u = u.PerSecond()
 		} else {
 			u = differenceUnit(u)
 		}

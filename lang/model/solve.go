@@ -313,7 +313,11 @@ func (b *builder) otherRests(start, found point, set, equations []int) {
 		for _, v := range set {
 			parts = append(parts, b.signalOf(v).Name+" = "+shortWith(e.variable(v), b.signalOf(v).Unit.Text))
 		}
-		b.Notes = append(b.Notes, "it rests elsewhere too, for instance at "+abridged(parts)+"; around rest, … chooses by holding a value")
+		note := "it rests elsewhere too, for instance at " + abridged(parts)
+		if len(b.around.find) == 0 {
+			note += "; around rest, … chooses by holding a value"
+		}
+		b.Notes = append(b.Notes, note)
 		return
 	}
 }

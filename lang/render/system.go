@@ -91,7 +91,10 @@ func systemArray(p *value.Plant, o Options) ([]string, sign) {
 	}
 	rates := make([]string, len(p.States))
 	for i, s := range p.States {
-		rates[i] = word + oneLine(s.Name)
+		if p.Every == nil {
+			s.Unit = s.Unit.PerSecond()
+		}
+		rates[i] = word + signalHead(s)
 	}
 	if n+q <= mostRows && n+m <= mostColumns && n+m > 0 && n+q > 0 {
 		g, s := arrayGrid(p, o)
@@ -169,11 +172,13 @@ func arrayGrid(p *value.Plant, o Options) (*grid, sign) {
 func operatingPoint(p *value.Plant, o Options) (string, sign) {
 	var parts []string
 	s := unsigned
+	listed := map[string]bool{}
 	add := func(signals []value.Signal, at []value.Number) {
 		for i, n := range at {
-			if i >= len(signals) || (n.Exact != nil && n.Exact.Sign() == 0) {
-				continue
+			if i >= len(signals) || (n.Exact != nil && n.Exact.Sign() == 0) || listed[signalHead(signals[i])] {
+				continue // an output that shows a state is not repeated
 			}
+			listed[signalHead(signals[i])] = true
 			f := figureOf(n, o)
 			s = s.both(f.sign)
 			equal := " = "
@@ -248,23 +253,6 @@ func gainFields(g *value.Gain) []value.Named {
 		fields = append(fields, value.Named{Name: "method", Value: value.Text(g.Method)})
 	}
 	return append(fields, g.Extra...)
-}
-
-func layModel(m *value.Model, o Options) laid {
-	var l laid
-	if m.Plant != nil {
-		l = layPlant(m.Plant, o)
-		if m.Name != "" {
-			l.title = "model, " + l.title
-		}
-	} else {
-		l = laid{sign: unsigned, title: "model", lines: []string{}}
-	}
-	l.notes = append(l.notes, m.Notes...)
-	if len(m.Extra) > 0 {
-		l.lines = append(append(l.lines, ""), layNamed(m.Extra, o.narrower(2))...)
-	}
-	return l
 }
 
 // everyText is a sample time in the unit that suits it.
