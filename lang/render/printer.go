@@ -179,7 +179,8 @@ func (p *Printer) claim(e eval.Event, c *eval.Claim) []string {
 	if len(c.Poles) > 0 {
 		o := p.Options
 		text, _ := listText(&value.List{Items: c.Poles}, o)
-		lines = append(lines, p.under("the printed numbers give the poles "+strings.Trim(text, "[]"))...)
+		lines = append(lines, p.under("the printed numbers give the poles")...)
+		lines = append(lines, breakAfterOperators(strings.Repeat(" ", verdictCells+2), strings.Trim(text, "[]"), o.width())...)
 	}
 	for _, n := range c.Notes {
 		lines = append(lines, p.under(n)...)

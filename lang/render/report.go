@@ -21,6 +21,12 @@ func layReport(r *value.Report, o Options) laid {
 		}
 		t := newTable(r, o)
 		l.sign = t.sign
+		if r.Holds != nil {
+			// The truth after the sign is exact, whatever the table beside it is.
+			if l.sign = exactly; t.sign == roughly || t.sign == keptExact {
+				l.remarks = []string{"table rounded"}
+			}
+		}
 		l.lines = append(l.lines, t.lines(o.width()-2)...)
 	}
 	return l

@@ -12,6 +12,7 @@ type table struct {
 	heads   []string
 	cells   [][]string // by column, then row
 	numeric []bool
+	paired  []bool // holds conjugate pairs, which may be set on two lines
 	sign    sign
 }
 
@@ -26,9 +27,10 @@ func newTable(r *value.Report, o Options) *table {
 	for j, head := range r.Columns {
 		t.heads[j] = oneLine(head)
 		entries := make([]entry, len(r.Rows))
-		numbers, others := 0, 0
+		numbers, others, pairs := 0, 0, false
 		for i, row := range r.Rows {
 			entries[i] = tableEntry(row, j, o)
+			pairs = pairs || entries[i].both
 			switch {
 			case !entries[i].isText:
 				numbers++
@@ -46,7 +48,8 @@ func newTable(r *value.Report, o Options) *table {
 			}
 		}
 		t.cells = append(t.cells, texts)
-		t.numeric = append(t.numeric, numbers > 0 && others == 0)
+		t.numeric = append(t.numeric, numbers > 0 && others == 0 && !pairs)
+		t.paired = append(t.paired, pairs)
 	}
 	return t
 }
@@ -128,8 +131,16 @@ func (t *table) rowLines(i int, widths []int) []string {
 	parts := make([][]string, len(widths))
 	height := 1
 	for j, w := range widths {
-		parts[j] = []string{t.cells[j][i]}
-		if text := strings.TrimRight(t.cells[j][i], " "); cells(text) > w {
+		text := t.cells[j][i]
+		if !t.numeric[j] {
+			text = strings.TrimRight(text, " ")
+		}
+		switch {
+		case cells(text) <= w:
+			parts[j] = []string{text}
+		case t.paired[j]:
+			parts[j] = splitPair(text)
+		default:
 			parts[j] = wrapped(text, w)
 		}
 		height = max(height, len(parts[j]))
@@ -173,6 +184,12 @@ func (t *table) widths(width int) ([]int, bool) {
 		if !t.numeric[j] {
 			least[j] = max(min(body, narrowestText), longestWord(t.cells[j], body), min(word, width))
 		}
+		if t.paired[j] {
+			least[j] = word
+			for _, text := range t.cells[j] {
+				least[j] = max(least[j], widest(splitPair(text)))
+			}
+		}
 		total += widths[j] + tableGap
 	}
 	for total > width {
@@ -189,6 +206,17 @@ func (t *table) widths(width int) ([]int, bool) {
 		total--
 	}
 	return widths, true
+}
+
+// splitPair sets a conjugate pair on two lines, its imaginary part below the real one.
+func splitPair(text string) []string {
+	text = strings.TrimRight(text, " ")
+	re, im, ok := strings.Cut(text, " ± ")
+	if !ok {
+		return []string{text}
+	}
+	indent := cells(text) - cells(strings.TrimLeft(text, " "))
+	return []string{strings.TrimRight(re, " "), strings.Repeat(" ", indent) + "± " + strings.TrimLeft(im, " ")}
 }
 
 // longestWord is the longest word of a column, at most a third of a terminal's line.

@@ -122,6 +122,9 @@ func shortFields(fields []value.Named, o Options) (string, sign, bool) {
 			return "", unsigned, false
 		}
 		text, t := inlineValue(f.Value, o)
+		if plain, ok := force(f.Value).(value.Text); ok {
+			text = oneLine(string(plain))
+		}
 		s = s.both(t)
 		parts = append(parts, readable(f.Name)+" "+text)
 	}
