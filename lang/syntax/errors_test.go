@@ -158,6 +158,8 @@ var errorCases = []struct {
 	{"5 m^n", 1, 4, "the exponent of a unit is a whole number", "m^2, m^-1 or m²; a power of a quantity needs parentheses: (2 m)^n"},
 	{"5 m^1.5", 1, 4, "the exponent of a unit is a whole number", "m^2, m^-1 or m²; a power of a quantity needs parentheses: (2 m)^n"},
 	{"5 m^100", 1, 4, "the exponent of a unit is beyond ±99", ""},
+	{"5 m ^2", 1, 5, "it is unclear whether ^ belongs to the unit or to the whole quantity", "m^2 without blanks is a unit; a power of the whole is (2 m)^2"},
+	{"5 m^2^3", 1, 6, "it is unclear whether ^ belongs to the unit or to the whole quantity", "m^2 without blanks is a unit; a power of the whole is (2 m)^2"},
 	{"x in", 1, 5, "a unit is missing after in", "as in 9.81 m/s^2, rad/s or 1/s, without blanks"},
 	{"x in m s", 1, 8, "an operator is missing between m and s", "a product is written m * s; a unit stands only after a number"},
 	{"x in 5", 1, 6, "a unit is missing after in", "as in 9.81 m/s^2, rad/s or 1/s, without blanks"},

@@ -123,6 +123,9 @@ func (p *parser) power(exponent bool) Expr {
 	if !p.operator("^") {
 		return left
 	}
+	if p.prev.kind == tokenUnit {
+		p.fail(diag.Syntax, p.raw(0).span, "m^2 without blanks is a unit; a power of the whole is (2 m)^2", "it is unclear whether ^ belongs to the unit or to the whole quantity")
+	}
 	p.deeper(p.raw(0).span)
 	defer func() { p.depth-- }()
 	return p.binary(left, "^", func() Expr { return p.power(true) })

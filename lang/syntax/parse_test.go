@@ -69,6 +69,7 @@ var statementCases = []struct{ text, want string }{
 	{"5 m * x", "show (5<m> * x)"},
 	{"5 m*2", "show (5<m> * 2)"},
 	{"5 m^2*3", "show (5<m^2> * 3)"},
+	{"(5 m)^2", "show (5<m> ^ 2)"},
 	{"2i rad/s", "show 2i<rad s^-1>"},
 	{"[1 m, 2 s]", "show [1<m>, 2<s>]"},
 	{"f(3 kg, t: 4 s)", "show f(3<kg>, t: 4<s>)"},
