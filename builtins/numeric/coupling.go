@@ -134,6 +134,14 @@ func (c *coupling) balanceBlock(n int, a []float64, lo, hi int) float64 {
 	if size == 1 {
 		return math.Abs(a[c.order[lo]*n+c.order[lo]])
 	}
+	if sums := c.offDiagonalSums(n, a, lo, hi); balancedAlready(sums[:size], sums[size:]) {
+		largest := 0.0
+		for j, sum := range sums[:size] {
+			i := c.order[lo+j]
+			largest = math.Max(largest, sum+math.Abs(a[i*n+i]))
+		}
+		return largest
+	}
 	w := make([]float64, size*size)
 	for i := range size {
 		for j := range size {
@@ -148,6 +156,35 @@ func (c *coupling) balanceBlock(n int, a []float64, lo, hi int) float64 {
 	}
 	copy(c.exponent[lo:hi], exponent)
 	return after
+}
+
+// offDiagonalSums are the column sums, then the row sums, of a block's absolute
+// values without its diagonal.
+func (c *coupling) offDiagonalSums(n int, a []float64, lo, hi int) []float64 {
+	size := hi - lo
+	sums := make([]float64, 2*size)
+	for i := range size {
+		row, sum := a[c.order[lo+i]*n:c.order[lo+i]*n+n], 0.0
+		for j, at := range c.order[lo:hi] {
+			if i != j {
+				v := math.Abs(row[at])
+				sums[j] += v
+				sum += v
+			}
+		}
+		sums[size+i] = sum
+	}
+	return sums
+}
+
+// balancedAlready tells whether no power of two brings a column and its row closer.
+func balancedAlready(columns, rows []float64) bool {
+	for i, column := range columns {
+		if row := rows[i]; column > 2*row || row > 2*column {
+			return false
+		}
+	}
+	return true
 }
 
 // balancingExponents balances w in place, off-diagonal row sums against column
@@ -242,14 +279,21 @@ func (c *coupling) from(n int, a, w []float64) {
 	}
 }
 
-// oneNorm is the largest column sum of the n×n row-major a.
+// oneNorm is the largest column sum of the n×n row-major a; NaN entries make it
+// NaN or infinite.
 func oneNorm(n int, a []float64) float64 {
-	largest := 0.0
-	for j := range n {
-		sum := 0.0
-		for i := range n {
-			sum += math.Abs(a[i*n+j])
+	var few [32]float64
+	sums := few[:]
+	if n > len(few) {
+		sums = make([]float64, n)
+	}
+	for i := range n {
+		for j, v := range a[i*n : i*n+n] {
+			sums[j] += math.Abs(v)
 		}
+	}
+	largest := 0.0
+	for _, sum := range sums {
 		if !(sum <= largest) { // true for NaN too
 			largest = sum
 		}

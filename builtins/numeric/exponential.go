@@ -29,7 +29,7 @@ func Exponential(a *mat.Dense) (*mat.Dense, Certificate, error) {
 	if n == 0 {
 		return &mat.Dense{}, Certificate{Method: "empty", Digits: mostDigits}, nil
 	}
-	result, err := exponentialOf(n, packed(a), []columnGroup{{0, n}}, n)
+	result, err := exponentialOf(n, entriesFor(a), []columnGroup{{0, n}}, n)
 	if err != nil {
 		return nil, Certificate{}, err
 	}
@@ -55,6 +55,15 @@ func (r *exponentialResult) certificate(group int) Certificate {
 		c.note("every entry is below the smallest binary64 number and reads 0")
 	}
 	return c
+}
+
+// entriesFor is packed without the copy where the storage has no gaps; the
+// result must only be read.
+func entriesFor(m *mat.Dense) []float64 {
+	if raw := m.RawMatrix(); raw.Stride == raw.Cols {
+		return raw.Data[:raw.Rows*raw.Cols]
+	}
+	return packed(m)
 }
 
 // packed copies a matrix to row-major storage without gaps.
@@ -187,10 +196,10 @@ func overflowError(n int, a []float64) error {
 	return fmt.Errorf("%s (the eigenvalue of largest real part is %s)", text, modeText(largest))
 }
 
-// squaring is one scaling-and-squaring computation in working coordinates.
+// squaring is one scaling-and-squaring computation in working coordinates; w is
+// the working matrix before shifting.
 type squaring struct {
 	*padeWork
-	w      []float64 // the working matrix before shifting
 	blocks *coupling
 	shift  float64
 	step   int // squarings from the approximant to the result
@@ -199,14 +208,14 @@ type squaring struct {
 // squaredExponential runs scaling and squaring in the coordinates of c and
 // compares the result with an independent computation.
 func squaredExponential(n int, a []float64, c *coupling, groups []columnGroup, rows int) (*exponentialResult, error) {
-	s := &squaring{padeWork: newPadeWork(n), w: make([]float64, n*n), blocks: c}
+	s := &squaring{padeWork: newPadeWork(n), blocks: c}
+	defer s.release()
 	c.into(n, s.w, a)
 	norm := oneNorm(n, s.w)
 	copy(s.a, s.w)
 	s.shift = s.meanShift(norm)
 	degree, step := s.prepare(c.scaled && c.depth > 1)
 	s.step = step
-	shiftedNorm := math.Ldexp(oneNorm(n, s.a), step)
 	s.approximant(degree)
 	growth := s.squareUp(step, true)
 	value := make([]float64, n*n)
@@ -219,8 +228,8 @@ func squaredExponential(n int, a []float64, c *coupling, groups []columnGroup, r
 	if c.scaled {
 		r.method += ", states scaled"
 	}
-	if n > smallOrder && 12*shiftedNorm < float64(2*n) {
-		r.errors = s.probeErrors(a, value, groups, rows, shiftedNorm)
+	if n > smallOrder && s.spread < float64(n)/6 {
+		r.errors = s.probeErrors(value, groups, rows)
 	} else {
 		r.errors = s.halfStepErrors(degree, value, groups, rows)
 	}
@@ -365,105 +374,4 @@ func conditionFromGrowth(norm float64, growth []float64) float64 {
 	}
 	integral += 2 * width * excess(0) * late
 	return math.Max(norm, 1) * math.Max(integral, 1)
-}
-
-// errorMargin is what measured differences of two computations are multiplied
-// by: errors that both share, and luck.
-const errorMargin = 2
-
-// halfStepErrors repeats the computation from half the step with one squaring
-// more and measures the difference in each column group.
-func (s *squaring) halfStepErrors(degree int, value []float64, groups []columnGroup, rows int) []float64 {
-	n := s.n
-	s.halve(1)
-	s.approximant(degree)
-	s.squareUp(s.step+1, false)
-	other := s.u
-	s.blocks.from(n, other, s.x)
-	measured := make([]float64, len(groups))
-	for g, group := range groups {
-		largest, difference := 0.0, 0.0
-		for i := range rows {
-			for j := group.from; j < group.to; j++ {
-				largest = math.Max(largest, math.Abs(value[i*n+j]))
-				difference = math.Max(difference, math.Abs(value[i*n+j]-other[i*n+j]))
-			}
-		}
-		measured[g] = relativeError(errorMargin*difference, largest, group)
-	}
-	return measured
-}
-
-// relativeError is difference/largest, at least one rounding, gradual underflow
-// included. A result that is all zero holds no digits, except where zero stands
-// for the coupling of an input that moves nothing.
-func relativeError(difference, largest float64, group columnGroup) float64 {
-	switch {
-	case math.IsNaN(difference):
-		return math.Inf(1)
-	case largest == 0 && difference == 0 && group.from > 0:
-		return unitRoundoff
-	case largest == 0:
-		return math.Inf(1)
-	}
-	return math.Max((difference+math.SmallestNonzeroFloat64)/largest, unitRoundoff)
-}
-
-// probeErrors compares the result, applied to one vector a group, with the
-// Taylor series of the exponential applied to it in steps of norm at most 2.
-// It costs n² a term, far less than a product, and shares nothing with the
-// result but the working matrix.
-func (s *squaring) probeErrors(a, value []float64, groups []columnGroup, rows int, norm float64) []float64 {
-	n := s.n
-	measured := make([]float64, len(groups))
-	term, sum, next := s.u[:n], s.u[n:2*n], s.v[:n]
-	order := s.blocks.order
-	for g, group := range groups {
-		direct, x := make([]float64, n), make([]float64, n)
-		largest := 0.0
-		for j := group.from; j < group.to; j++ {
-			x[j] = signOf(j)
-			for i := range rows {
-				direct[i] += value[i*n+j] * x[j]
-				largest = math.Max(largest, math.Abs(value[i*n+j]))
-			}
-		}
-		for k := range n {
-			sum[k] = math.Ldexp(x[order[k]], -s.blocks.exponent[k])
-		}
-		s.taylorAction(sum, term, next, norm)
-		difference := 0.0
-		for k := range n {
-			if order[k] < rows {
-				difference = math.Max(difference, math.Abs(math.Ldexp(sum[k], s.blocks.exponent[k])-direct[order[k]]))
-			}
-		}
-		measured[g] = relativeError(errorMargin*difference, largest, group)
-	}
-	return measured
-}
-
-// taylorAction overwrites y with e^W·y.
-func (s *squaring) taylorAction(y, term, next []float64, norm float64) {
-	n := s.n
-	steps := max(int(math.Ceil(norm/2)), 1)
-	// s.a holds the shifted working matrix divided by 2^step.
-	factor := math.Ldexp(1, s.step) / float64(steps)
-	growth := math.Exp(s.shift / float64(steps))
-	for range steps {
-		copy(term, y)
-		for k := 1; k <= 40; k++ {
-			blas64.Implementation().Dgemv(blas.NoTrans, n, n, factor/float64(k), s.a, n, term, 1, 0, next, 1)
-			term, next = next, term
-			size, whole := 0.0, 0.0
-			for i, v := range term {
-				y[i] += v
-				size, whole = math.Max(size, math.Abs(v)), math.Max(whole, math.Abs(y[i]))
-			}
-			if size <= whole*unitRoundoff/8 {
-				break
-			}
-		}
-		scaleSlice(y, growth)
-	}
 }

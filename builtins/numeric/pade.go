@@ -2,6 +2,7 @@ package numeric
 
 import (
 	"math"
+	"sync"
 
 	"gonum.org/v1/gonum/blas"
 	"gonum.org/v1/gonum/blas/blas64"
@@ -37,20 +38,42 @@ const smallOrder = 24
 type padeWork struct {
 	n             int
 	a, a2, a4, a6 []float64
-	u, v, x       []float64
+	u, v, x, w    []float64
+	absolute      []float64 // |A|, in the place of v
 	probe, image  []float64
+	powerRow      []float64
+	powerBits     []float64
+	powerExponent int
 	pivots, signs []int
+	slab          []float64
+	// spread is max(‖A⁶‖^(1/6), ‖A⁸‖^(1/8)) or alike of the matrix before scaling,
+	// which bounds how its powers grow far better than its norm.
+	spread float64
 }
 
+// padeSlabs are reused: allocating them anew costs more than a product.
+var padeSlabs = sync.Pool{New: func() any { return new([]float64) }}
+
+// newPadeWork takes space whose contents are arbitrary; release gives it back.
 func newPadeWork(n int) *padeWork {
-	slab := make([]float64, 7*n*n+2*n)
-	p := &padeWork{n: n, pivots: make([]int, n), signs: make([]int, n)}
-	for _, field := range []*[]float64{&p.a, &p.a2, &p.a4, &p.a6, &p.u, &p.v, &p.x} {
+	kept := padeSlabs.Get().(*[]float64)
+	if size := 8*n*n + 3*n; cap(*kept) < size {
+		*kept = make([]float64, size)
+	} else {
+		*kept = (*kept)[:size]
+	}
+	slab := *kept
+	p := &padeWork{n: n, pivots: make([]int, n), signs: make([]int, n), slab: slab}
+	for _, field := range []*[]float64{&p.a, &p.a2, &p.a4, &p.a6, &p.u, &p.v, &p.x, &p.w} {
 		*field, slab = slab[:n*n:n*n], slab[n*n:]
 	}
-	p.probe, p.image = slab[:n], slab[n:]
+	p.probe, p.image, p.powerRow = slab[:n:n], slab[n:2*n:2*n], slab[2*n:]
+	p.absolute = p.v
+	p.powerBits = make([]float64, 0, 27)
 	return p
 }
+
+func (p *padeWork) release() { padeSlabs.Put(&p.slab) }
 
 // prepare scales p.a by a power of two, forms the even powers needed and
 // returns the degree and the number of squarings, the scaling included.
@@ -67,6 +90,7 @@ func (p *padeWork) prepare(highest bool) (degree, squarings int) {
 		norm = math.Ldexp(norm, -squarings)
 	}
 	highest = highest || n <= smallOrder
+	p.spread = math.Ldexp(norm, squarings)
 	p.square(p.a2, p.a)
 	if !highest && norm <= padeReach[3] {
 		return 3, squarings
@@ -76,6 +100,7 @@ func (p *padeWork) prepare(highest bool) (degree, squarings int) {
 	if !highest && squarings == 0 {
 		d6 := math.Pow(p.normOfProduct(p.a4, p.a2), 1.0/6)
 		if eta := math.Max(d4, d6); eta <= padeReach[5] && p.extraSquarings(5, 0) == 0 {
+			p.spread = eta
 			return 5, 0
 		}
 	}
@@ -86,12 +111,14 @@ func (p *padeWork) prepare(highest bool) (degree, squarings int) {
 	if !highest && squarings == 0 {
 		for _, m := range []int{7, 9} {
 			if eta <= padeReach[m] && p.extraSquarings(m, 0) == 0 {
+				p.spread = eta
 				return m, 0
 			}
 		}
 	}
 	d10 := math.Pow(p.normOfProduct(p.a4, p.a6), 1.0/10)
 	eta = math.Min(eta, math.Max(d8, d10))
+	p.spread = math.Ldexp(eta, squarings)
 	s := 0
 	if eta > padeReach[13] {
 		s = int(math.Ceil(math.Log2(eta / padeReach[13])))
@@ -116,26 +143,29 @@ func (p *padeWork) halve(s int) {
 // matrix divided by 2^s: how often more it must be halved because of the first
 // neglected term, measured with |A|, which cancellation cannot hide.
 func (p *padeWork) extraSquarings(degree, s int) int {
-	n := p.n
-	norm := oneNorm(n, p.a)
-	if norm == 0 {
+	bits := p.absolutePowerBits(2*degree + 1)
+	if math.IsInf(bits, -1) {
 		return 0
 	}
-	row, next := p.probe, p.image
-	for j := range row {
-		row[j] = 1
-	}
-	bits := 0.0
-	for range 2*degree + 1 {
-		clear(next)
-		for i, r := range row {
-			if r == 0 {
-				continue
-			}
-			for j, v := range p.a[i*n : i*n+n] {
-				next[j] += r * math.Abs(v)
-			}
+	bits -= p.absolutePowerBits(1) + float64(2*degree*s)
+	alpha := bits - math.Log2(padeTail[degree]) + 53
+	return max(int(math.Ceil(alpha/float64(2*degree))), 0)
+}
+
+// absolutePowerBits is log₂ of the 1-norm of |A|^k for the matrix before halving,
+// −Inf when that vanishes; the sequence is kept and extended as needed.
+func (p *padeWork) absolutePowerBits(k int) float64 {
+	n, row, next := p.n, p.powerRow, p.image
+	if len(p.powerBits) == 0 {
+		for i, v := range p.a {
+			p.absolute[i] = math.Abs(v)
 		}
+		for j := range row {
+			row[j] = 1
+		}
+	}
+	for len(p.powerBits) < k {
+		blas64.Implementation().Dgemv(blas.Trans, n, n, 1, p.absolute, n, row, 1, 0, next, 1)
 		largest := 0.0
 		for _, v := range next {
 			if v > largest {
@@ -143,20 +173,18 @@ func (p *padeWork) extraSquarings(degree, s int) int {
 			}
 		}
 		if largest == 0 {
-			return 0
+			return math.Inf(-1)
 		}
+		// The row is kept near 1 and its exponent apart.
 		e := math.Ilogb(largest)
-		bits += float64(e)
-		scaleSlice(next, math.Ldexp(1, -e))
-		row, next = next, row
+		factor := math.Ldexp(1, -e)
+		for j, v := range next {
+			row[j] = v * factor
+		}
+		p.powerExponent += e
+		p.powerBits = append(p.powerBits, float64(p.powerExponent)+math.Log2(largest*factor))
 	}
-	largest := 0.0
-	for _, v := range row {
-		largest = math.Max(largest, v)
-	}
-	bits += math.Log2(largest) - float64(2*degree*s) - math.Log2(norm)
-	alpha := bits - math.Log2(padeTail[degree]) + 53
-	return max(int(math.Ceil(alpha/float64(2*degree))), 0)
+	return p.powerBits[k-1]
 }
 
 // normOfProduct estimates the 1-norm of the product of two of the powers
@@ -213,7 +241,7 @@ func (p *padeWork) approximant(degree int) {
 		p.x[i] = v + u
 		p.v[i] = v - u
 	}
-	kernels.Dgetrf(n, n, p.v, n, p.pivots)
+	factorColumns(n, 0, n, p.v, p.pivots)
 	kernels.Dgetrs(blas.NoTrans, n, n, p.v, n, p.pivots, p.x, n)
 }
 
@@ -259,5 +287,50 @@ func scaleSlice(x []float64, factor float64) {
 func fillScaled(dst []float64, factor float64, x []float64) {
 	for i, v := range x {
 		dst[i] = factor * v
+	}
+}
+
+// factorColumns factors columns from … to−1 of the n×n row-major a, whose earlier
+// columns are factored already, as L·U with row interchanges, halving the
+// columns so that most of the work is products (S. Toledo, SIAM J. Matrix Anal.
+// Appl. 18, 1997). Whole rows are exchanged; pivots are as Dgetrs wants them.
+func factorColumns(n, from, to int, a []float64, pivots []int) {
+	const fewest = 8
+	if to-from > fewest {
+		middle := (from + to) / 2
+		factorColumns(n, from, middle, a, pivots)
+		blas64.Implementation().Dtrsm(blas.Left, blas.Lower, blas.NoTrans, blas.Unit, middle-from, to-middle, 1,
+			a[from*n+from:], n, a[from*n+middle:], n)
+		multiply(blas.NoTrans, blas.NoTrans, n-middle, to-middle, middle-from, -1,
+			a[middle*n+from:], n, a[from*n+middle:], n, 1, a[middle*n+middle:], n)
+		factorColumns(n, middle, to, a, pivots)
+		return
+	}
+	for j := from; j < to; j++ {
+		pivot, largest := j, math.Abs(a[j*n+j])
+		for i := j + 1; i < n; i++ {
+			if v := math.Abs(a[i*n+j]); v > largest {
+				pivot, largest = i, v
+			}
+		}
+		pivots[j] = pivot
+		if pivot != j {
+			x, y := a[j*n:j*n+n], a[pivot*n:pivot*n+n]
+			for k, v := range x {
+				x[k], y[k] = y[k], v
+			}
+		}
+		if largest == 0 {
+			continue
+		}
+		top := a[j*n+j+1 : j*n+to]
+		for i := j + 1; i < n; i++ {
+			factor := a[i*n+j] / a[j*n+j]
+			a[i*n+j] = factor
+			row := a[i*n+j+1 : i*n+to]
+			for k, v := range top {
+				row[k] -= factor * v
+			}
+		}
 	}
 }

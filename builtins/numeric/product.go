@@ -142,3 +142,51 @@ func (s *productSpace) addBlock(alpha float64, rows, columns, depth int, c []flo
 		}
 	}
 }
+
+// smallestTriangle is the order below which gonum solves with a triangle itself.
+const smallestTriangle = 24
+
+// Dtrsm solves op(A)·X = α·B or X·op(A) = α·B as blas.Float64Level3 says, halving
+// the triangle so that nearly all the work is products (F. G. Gustavson, IBM J.
+// Res. Develop. 41, 1997).
+func (t tiledProducts) Dtrsm(side blas.Side, uplo blas.Uplo, trans blas.Transpose, diag blas.Diag, m, n int, alpha float64, a []float64, lda int, b []float64, ldb int) {
+	order := n
+	if side == blas.Left {
+		order = m
+	}
+	if order < smallestTriangle || m*n < smallestTriangle*4 || alpha == 0 || !holds(a, lda, order, order) || !holds(b, ldb, m, n) {
+		t.Implementation.Dtrsm(side, uplo, trans, diag, m, n, alpha, a, lda, b, ldb)
+		return
+	}
+	half := order / 2
+	rest := order - half
+	second := a[half*lda+half:]
+	coupling := a[half*lda:] // rest×half below the diagonal, half×rest above it
+	if uplo == blas.Upper {
+		coupling = a[half:]
+	}
+	lower := (uplo == blas.Lower) == (trans == blas.NoTrans)
+	if side == blas.Left {
+		top, bottom := b, b[half*ldb:]
+		if lower {
+			t.Dtrsm(side, uplo, trans, diag, half, n, alpha, a, lda, top, ldb)
+			t.Dgemm(trans, blas.NoTrans, rest, n, half, -1, coupling, lda, top, ldb, alpha, bottom, ldb)
+			t.Dtrsm(side, uplo, trans, diag, rest, n, 1, second, lda, bottom, ldb)
+			return
+		}
+		t.Dtrsm(side, uplo, trans, diag, rest, n, alpha, second, lda, bottom, ldb)
+		t.Dgemm(trans, blas.NoTrans, half, n, rest, -1, coupling, lda, bottom, ldb, alpha, top, ldb)
+		t.Dtrsm(side, uplo, trans, diag, half, n, 1, a, lda, top, ldb)
+		return
+	}
+	left, right := b, b[half:]
+	if lower {
+		t.Dtrsm(side, uplo, trans, diag, m, rest, alpha, second, lda, right, ldb)
+		t.Dgemm(blas.NoTrans, trans, m, half, rest, -1, right, ldb, coupling, lda, alpha, left, ldb)
+		t.Dtrsm(side, uplo, trans, diag, m, half, 1, a, lda, left, ldb)
+		return
+	}
+	t.Dtrsm(side, uplo, trans, diag, m, half, alpha, a, lda, left, ldb)
+	t.Dgemm(blas.NoTrans, trans, m, rest, half, -1, left, ldb, coupling, lda, alpha, right, ldb)
+	t.Dtrsm(side, uplo, trans, diag, m, rest, 1, second, lda, right, ldb)
+}

@@ -36,5 +36,6 @@ func wideRegisters() bool {
 func init() {
 	if wideRegisters() {
 		blas64.Use(tiledProducts{})
+		products = tiledProducts{} // it was taken from blas64 before this ran
 	}
 }

@@ -53,6 +53,43 @@ func TestTiledProductAgainstPlainProduct(t *testing.T) {
 	}
 }
 
+func TestTriangularSolveAgainstPlainSolve(t *testing.T) {
+	if !wideRegisters() {
+		t.Skip("this processor has no AVX2 with FMA")
+	}
+	random := rand.New(rand.NewPCG(82, 1))
+	for range 300 {
+		m, n := 1+random.IntN(90), 1+random.IntN(90)
+		side := []blas.Side{blas.Left, blas.Right}[random.IntN(2)]
+		uplo := []blas.Uplo{blas.Upper, blas.Lower}[random.IntN(2)]
+		trans := []blas.Transpose{blas.NoTrans, blas.Trans}[random.IntN(2)]
+		diag := []blas.Diag{blas.NonUnit, blas.Unit}[random.IntN(2)]
+		order := n
+		if side == blas.Left {
+			order = m
+		}
+		lda, ldb := order+random.IntN(3), n+random.IntN(3)
+		a, b := make([]float64, order*lda), make([]float64, m*ldb)
+		for i := range a {
+			a[i] = random.NormFloat64() / float64(order)
+		}
+		for i := range order {
+			a[i*lda+i] = 2 + random.Float64()
+		}
+		for i := range b {
+			b[i] = random.NormFloat64()
+		}
+		want, alpha := append([]float64(nil), b...), random.NormFloat64()
+		tiledProducts{}.Dtrsm(side, uplo, trans, diag, m, n, alpha, a, lda, b, ldb)
+		blasgonum.Implementation{}.Dtrsm(side, uplo, trans, diag, m, n, alpha, a, lda, want, ldb)
+		for i, v := range want {
+			if math.Abs(b[i]-v) > 1e-13 {
+				t.Fatalf("%c %c %c %c %d×%d: entry %d is %v, not %v", side, uplo, trans, diag, m, n, i, b[i], v)
+			}
+		}
+	}
+}
+
 func BenchmarkProduct(b *testing.B) {
 	for _, n := range []int{16, 32, 100, 400} {
 		x, y, z := make([]float64, n*n), make([]float64, n*n), make([]float64, n*n)
