@@ -29,9 +29,6 @@ func (d *doubled) add(a float64) {
 	d.high = s
 }
 
-// value rounds d to binary64.
-func (d *doubled) value() float64 { return d.high + d.low }
-
 // doubledMatrix is a row-major matrix of doubled numbers; low may be nil.
 type doubledMatrix struct {
 	rows, columns int

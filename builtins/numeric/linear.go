@@ -62,7 +62,6 @@ type factored struct {
 	lu           []float64
 	pivots       []int
 	rows, column []float64
-	sign         float64
 }
 
 // factorSquare scales and factors; ok is false when a pivot vanishes.

@@ -66,9 +66,7 @@ func modes(c *value.Call) (value.Value, error) {
 	hidden := 0
 	for _, m := range rows {
 		r.Rows = append(r.Rows, m.row(p))
-		for _, root := range m.members() {
-			all = append(all, root)
-		}
+		all = append(all, m.members()...)
 		for i, root := range m.members() {
 			if i < (m.count-m.moved[0])*m.width() {
 				missing = append(missing, root)

@@ -2,7 +2,6 @@ package system
 
 import (
 	"fmt"
-	"math"
 
 	"gainwright/builtins/numeric"
 	"gainwright/lang/diag"
@@ -194,15 +193,4 @@ func signalName(signals []value.Signal, i int, kind string) string {
 		return signals[i].Name
 	}
 	return fmt.Sprintf("%s %d", kind, i+1)
-}
-
-// finite tells whether every entry is a finite number.
-func finite(m *value.Matrix) bool {
-	re, im := m.Floats()
-	for _, x := range append(append([]float64(nil), re...), im...) {
-		if math.IsNaN(x) || math.IsInf(x, 0) {
-			return false
-		}
-	}
-	return true
 }
