@@ -32,7 +32,7 @@ var mayImport = map[string][]string{
 	"gainwright/lang/eval":   {"diag", "syntax", "exact", "value", "model"},
 	"gainwright/lang/render": {"diag", "syntax", "exact", "value", "model", "eval"},
 	"gainwright/lang/prompt": {"diag", "syntax", "value", "eval", "render"},
-	"gainwright/lang/report": {"diag", "syntax", "value", "eval", "render"},
+	"gainwright/lang/report": {"diag", "syntax", "value", "eval", "render", "figure"},
 	"gainwright/lang/figure": {"diag", "value"},
 }
 
