@@ -329,21 +329,37 @@ func (t *task) complete(g *value.Gain, k *value.Matrix) error {
 		re, _ := loop.Floats()
 		asItStands = value.FloatMatrix(n, n, re, 0)
 	}
-	roots, err := system.Eigenvalues(asItStands)
-	if err != nil {
-		return err
+	roots := t.asWanted(k)
+	if roots == nil {
+		if roots, err = system.Eigenvalues(asItStands); err != nil {
+			return err
+		}
 	}
 	g.Poles = system.List(roots).Items
 	e, err := numeric.Eigen(loop.Dense())
 	if err == nil {
 		s := value.FloatErr(e.VectorCondition, e.VectorCondition*1e-3)
 		g.Sensitivity = &s
-		if note := t.rounding(k, roots, e); note != "" {
-			g.Notes = append(g.Notes, note)
-		}
+		g.Rounding = value.Later(func() value.Value { return value.Text(t.rounding(k, roots, e)) })
 	}
 	g.Values = t.oriented(k)
 	return nil
+}
+
+// asWanted gives the wanted poles when an exact gain of one channel gives exactly their polynomial, else nil.
+func (t *task) asWanted(k *value.Matrix) []system.Root {
+	n, _ := t.a.Dims()
+	if _, m := t.b.Dims(); t.wanted == nil || m != 1 || n > system.ExactOrder || !system.AllExact(t.a, t.b, k) {
+		return nil
+	}
+	wanted, err := value.PolynomialFromPoles(t.wanted)
+	if err != nil || wanted.Exact == nil {
+		return nil
+	}
+	if same, err := exact.Assigns(t.a.Exact(), t.b.Exact(), k.Exact(), *wanted.Exact); err != nil || !same {
+		return nil
+	}
+	return system.RootsFromList(t.wanted)
 }
 
 // oriented is K, or L = Kᵀ.

@@ -146,7 +146,7 @@ func reducedObserver(c *value.Call) (value.Value, error) {
 		q.Outputs = append(q.Outputs, s)
 	}
 	q.Inputs = distinct(q.Inputs)
-	q.Notes = g.Notes
+	q.Notes = g.Remarks()
 	q.Extra = []value.Named{{Name: "gain", Value: l}}
 	t.Columns = system.Labels(p.States)
 	q.Transformation = t

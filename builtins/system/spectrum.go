@@ -228,6 +228,31 @@ func sortRoots(roots []Root) {
 	})
 }
 
+// RootsFromList turns a list of numbers and complex numbers into roots ordered by magnitude.
+func RootsFromList(l *value.List) []Root {
+	var roots []Root
+	for _, v := range l.Items {
+		switch v := v.(type) {
+		case value.Number:
+			r := Root{Value: complex(v.Float64(), 0), Err: v.Err, Multiplicity: 1}
+			if v.IsExact() {
+				zero := value.Int(0)
+				r.Re, r.Im = &v, &zero
+			}
+			roots = append(roots, r)
+		case value.Complex:
+			r := Root{Value: v.Complex128(), Err: v.Err, Multiplicity: 1}
+			if v.IsExact() {
+				re, im := value.Rat(v.ExactRe), value.Rat(v.ExactIm)
+				r.Re, r.Im = &re, &im
+			}
+			roots = append(roots, r)
+		}
+	}
+	sortRoots(roots)
+	return roots
+}
+
 // List turns roots into a list value.
 func List(roots []Root) *value.List {
 	l := &value.List{}

@@ -280,3 +280,36 @@ func companion(p Polynomial) *Matrix {
 	}
 	return m
 }
+
+// Assigns tells whether a − b·k (b n×1, k 1×n) has exactly the wanted characteristic
+// polynomial, by det(s·I − a + b·k) = det(s·I − a) + k·adj(s·I − a)·b: no large
+// determinant is formed.
+func Assigns(a, b, k *Matrix, wanted Polynomial) (bool, error) {
+	if err := checkPlant(a, b, nil, nil); err != nil {
+		return false, err
+	}
+	if b.cols != 1 || k.rows != 1 || k.cols != a.rows || !k.clearable() {
+		return false, sizeError("checking a gain", b, k)
+	}
+	adj, err := adjugateTimes(a, b)
+	if err != nil {
+		return false, err
+	}
+	if wanted.Degree() != a.rows || wanted.Lead().Cmp(ratOne) != 0 {
+		return false, nil
+	}
+	gain, gainDen := clearAll(k)
+	var sum, term big.Int
+	for power := range a.rows {
+		sum.SetInt64(0)
+		for i := range gain {
+			sum.Add(&sum, term.Mul(&gain[i], &adj.coefficients[power][i]))
+		}
+		change := fraction(&sum, term.Mul(gainDen, &adj.den[power]))
+		want := new(big.Rat).Sub(wanted.Coefficient(power), adj.characteristic.Coefficient(power))
+		if want.Cmp(change) != 0 {
+			return false, nil
+		}
+	}
+	return true, nil
+}

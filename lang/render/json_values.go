@@ -349,7 +349,7 @@ func gainObject(g *value.Gain) *matrixJSON {
 	if len(g.ColumnSignals) > 0 {
 		out.Columns = signalHeads(g.ColumnSignals)
 	}
-	out.Role, out.Method, out.Free, out.Notes = g.Role, g.Method, g.Free, g.Notes
+	out.Role, out.Method, out.Free, out.Notes = g.Role, g.Method, g.Free, g.Remarks()
 	if len(g.Poles) > 0 {
 		out.Poles = valuesJSON(g.Poles)
 	}

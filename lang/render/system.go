@@ -217,7 +217,7 @@ func layGain(g *value.Gain, o Options) laid {
 		title += ", "
 	}
 	l.title = title + l.title
-	l.notes = append(l.notes, g.Notes...)
+	l.notes = append(l.notes, g.Remarks()...)
 	if g.Free {
 		l.notes = append(l.notes, "several gains give these poles; this is one of them")
 	}

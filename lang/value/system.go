@@ -49,6 +49,19 @@ type Gain struct {
 	Free                      bool // several gains give the same poles
 	Extra                     []Named
 	Notes                     []string
+	// Rounding tells where the gain, rounded, would miss its poles (a Text, empty for nothing); it is worked out when the gain is shown.
+	Rounding *Deferred
+}
+
+// Remarks gives the notes with what rounding would do.
+func (g *Gain) Remarks() []string {
+	if g.Rounding == nil {
+		return g.Notes
+	}
+	if t, ok := Force(g.Rounding).(Text); ok && t != "" {
+		return append(g.Notes[:len(g.Notes):len(g.Notes)], string(t))
+	}
+	return g.Notes
 }
 
 // Named is a field of a report.
