@@ -95,8 +95,12 @@ func (e *evaluation) node(n *node) dual {
 	out, err := e.compute(n, operands[0], operands[1], operands[2])
 	if err != nil {
 		located := asError(err)
-		if located == errNotReal || located.Message == errNotReal.Message {
+		if located.Message == errNotReal.Message && n.at.source != nil {
 			located = diag.New(diag.Numerical, "%s is not a real number at this point", excerpt(n.at.source, n.at.span))
+		}
+		if divisor := n.b; n.operation == opDivide && operands[1].value.isZero() && e.g.nodes[divisor].at.source != nil {
+			from := e.g.nodes[divisor].at
+			located.WithHelp("%s is zero there", excerpt(from.source, from.span))
 		}
 		out.err = located.At(n.at.span)
 		if n.at.source != nil {

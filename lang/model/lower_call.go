@@ -223,12 +223,30 @@ func (b *builder) inline(s *scope, e *syntax.Call, name *syntax.Name, fn Functio
 			fail(at, diag.Type, "%s needs %s", name.Name, p)
 		}
 	}
+	defer explainCall(s, at, name.Name, fn)
 	t := b.lower(inner, fn.Body)
-	if fn.Library {
-		t.at = at
-		return t
-	}
 	return term{node: t.node, dim: t.dim, truth: t.truth, isZero: t.isZero, at: at}
+}
+
+// explainCall adds where a function was called to an error in its text. The library's text
+// is not the user's: there the place moves to the call.
+func explainCall(s *scope, at place, name string, fn Function) {
+	switch p := recover().(type) {
+	case nil:
+	case failure:
+		if p.err.Source == fn.Source && !s.inFunction() {
+			line, _ := at.source.Position(at.span.Start)
+			if fn.Library {
+				p.err.Source, p.err.Span = at.source, at.span
+			}
+			if p.err.Help == "" {
+				p.err.WithHelp("this arose in %s, called in line %d", name, line)
+			}
+		}
+		panic(p)
+	default:
+		panic(p)
+	}
 }
 
 func contains(list []string, name string) bool {
