@@ -89,13 +89,18 @@ or an interruption, 64 wrong usage.`,
 	root.SetFlagErrorFunc(func(_ *cobra.Command, err error) error { return usageError{message: err.Error()} })
 	root.CompletionOptions.HiddenDefaultCmd = false
 	a.runFlags(root)
-	root.AddCommand(a.checkCommand(), a.tidyCommand(), a.explainCommand(), a.versionCommand())
+	root.AddCommand(a.checkCommand(), a.tidyCommand(), a.explainCommand(), a.reportCommand(), a.versionCommand())
 	return root
 }
 
 // runFlags are the flags of the commands that run files.
 func (a *app) runFlags(c *cobra.Command) {
 	c.Flags().BoolVar(&a.json, "json", false, "one JSON object a line instead of text")
+	a.valueFlags(c)
+}
+
+// valueFlags are the flags that say how values are worked out and shown.
+func (a *app) valueFlags(c *cobra.Command) {
 	c.Flags().IntVar(&a.digits, "digits", render.DefaultDigits, "significant digits to show, 1 to 17")
 	c.Flags().DurationVar(&a.timeLimit, "time-limit", 0, "longest time for one statement, such as 30s (no bound unless given)")
 }

@@ -94,41 +94,17 @@ func (p *Printer) under(text string) []string {
 }
 
 func (p *Printer) requirement(e eval.Event, r *eval.Requirement) []string {
-	word, c := "met", green
+	v := VerdictOf(e, p.Options)
+	c := green
 	switch {
 	case r.NotJudged:
-		word, c = "not judged", faint
+		c = faint
 	case !r.Met:
-		word, c = "missed", red
+		c = red
 	}
-	source := e.Text
-	lines := p.verdict(word, firstOf(r.Why, source), c)
-	var below []string
-	sides := ""
-	if r.Op != "" && r.Left != nil && r.Right != nil {
-		sides = p.sides(r)
-	}
-	switch {
-	case sides != "" && source == Inline(r.Left, p.Options)+" "+r.Op+" "+Inline(r.Right, p.Options):
-		// Two numbers compared say it all themselves.
-		if r.Why != "" {
-			below = append(below, source)
-		}
-	case r.Why != "" && sides != "":
-		below = append(below, source+": "+sides)
-	case r.Why != "":
-		below = append(below, source)
-	case sides != "" && sides != source:
-		below = append(below, sides)
-	}
-	if r.WithinRounding {
-		below = append(below, "within rounding: the bound lies inside the value's own uncertainty")
-	}
-	if r.Because != "" {
-		below = append(below, r.Because)
-	}
-	if len(below) > 0 {
-		lines = append(lines, p.under(strings.Join(below, "; "))...)
+	lines := p.verdict(v.Word, v.Text, c)
+	if len(v.Below) > 0 {
+		lines = append(lines, p.under(strings.Join(v.Below, "; "))...)
 	}
 	return lines
 }
@@ -142,20 +118,6 @@ func firstOf(texts ...string) string {
 	return ""
 }
 
-// sides shows both sides of a comparison with so many digits that they differ.
-func (p *Printer) sides(r *eval.Requirement) string {
-	o := p.Options
-	left, right := Inline(r.Left, o), Inline(r.Right, o)
-	for d := o.digits() + 1; unpadded(left) == unpadded(right) && !r.Met && d <= 17; d++ {
-		o.Digits = d
-		left, right = Inline(r.Left, o), Inline(r.Right, o)
-	}
-	if r.Met || r.NotJudged {
-		return left + " " + r.Op + " " + right
-	}
-	return left + " is not " + r.Op + " " + right
-}
-
 // unpadded is a number's text without the zeros that only say how many digits hold.
 func unpadded(text string) string {
 	if strings.ContainsAny(text, "e ") || !strings.Contains(text, ".") {
@@ -165,16 +127,17 @@ func unpadded(text string) string {
 }
 
 func (p *Printer) claim(e eval.Event, c *eval.Claim) []string {
-	word, tint := "agrees", green
-	switch {
-	case c.Undecided && !c.Agrees && !hasDisagreement(c):
-		word, tint = "undecided", yellow
-	case !c.Agrees:
-		word, tint = "disagrees", red
+	v := VerdictOf(e, p.Options)
+	tint := green
+	switch v.Word {
+	case "undecided":
+		tint = yellow
+	case "disagrees":
+		tint = red
 	}
-	lines := p.verdict(word, e.Text, tint)
-	for _, entry := range c.Entries {
-		lines = append(lines, p.under(claimEntry(entry))...)
+	lines := p.verdict(v.Word, v.Text, tint)
+	for _, entry := range v.Below {
+		lines = append(lines, p.under(entry)...)
 	}
 	if len(c.Poles) > 0 {
 		o := p.Options

@@ -42,17 +42,25 @@ func fieldLines(fields []value.Named, hasTable bool, o Options) []string {
 	return lines
 }
 
+// longest list among the fields of a report that has a table too
+const mostFieldItems = 40
+
 // bySize parts the fields of a report: those that take lines of their own are only named,
 // with their size, unless there is nothing else to show.
 func bySize(fields []value.Named, hasTable bool, o Options) (small []value.Named, large []string) {
 	for _, f := range fields {
 		f.Value = force(f.Value)
 		_, _, short := nested(f.Value, o)
-		if short || !isLarge(f.Value) {
+		list, isList := f.Value.(*value.List)
+		isLong := isList && hasTable && len(list.Items) > mostFieldItems
+		if short || !isLarge(f.Value) && !isLong {
 			small = append(small, f)
 			continue
 		}
 		size := ""
+		if isLong {
+			size = fmt.Sprintf(" (%d items)", len(list.Items))
+		}
 		if m, ok := f.Value.(*value.Matrix); ok {
 			r, c := m.Dims()
 			size = fmt.Sprintf(" (%d × %d)", r, c)

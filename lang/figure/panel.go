@@ -1,0 +1,353 @@
+package figure
+
+import (
+	"fmt"
+	"math"
+	"strconv"
+	"strings"
+)
+
+// the drawing's width, and of a panel the height and the room for texts
+const (
+	pageWidth   = 640.0
+	panelHeight = 150.0
+	headRoom    = 26.0 // above a panel: what it shows
+	footRoom    = 40.0 // below the last one: ticks and their heading
+	panelGap    = 12.0
+	rightRoom   = 22.0
+	leastLeft   = 34.0
+	mostCurves  = 4
+)
+
+// curve is one line of a panel.
+type curve struct {
+	name      string
+	x, y      []float64
+	staircase bool
+	low, high *float64 // limits to draw
+}
+
+// panel is one set of axes; panels stand below each other over one horizontal axis.
+type panel struct {
+	heading func(power int) string
+	curves  []curve
+	levels  []float64 // horizontal lines that mean something
+	step    float64   // wanted distance of ticks, 0 for any round one
+	marks   []mark
+	y       *axis
+}
+
+type mark struct {
+	x, y float64
+	text string
+}
+
+// the classes of the curves in their order: hue and dashes differ
+var curveClasses = [mostCurves]string{"one", "two", "three", "four"}
+
+// canvas collects a drawing.
+type canvas struct {
+	strings.Builder
+}
+
+func (c *canvas) printf(format string, args ...any) { fmt.Fprintf(c, format, args...) }
+
+// short writes a coordinate with one decimal at most.
+func short(x float64) string {
+	s := strconv.FormatFloat(x, 'f', 1, 64)
+	s = strings.TrimSuffix(s, ".0")
+	if s == "-0" {
+		return "0"
+	}
+	return s
+}
+
+func (c *canvas) text(x, y float64, anchor, class, s string) {
+	extra := ""
+	if class != "" {
+		extra = ` class="` + class + `"`
+	}
+	c.printf(`<text x="%s" y="%s" text-anchor="%s"%s>%s</text>`, short(x), short(y), anchor, extra, clean(s))
+}
+
+func (c *canvas) line(class string, x1, y1, x2, y2 float64) {
+	c.printf(`<path class="%s" d="M%s %sL%s %s"/>`, class, short(x1), short(y1), short(x2), short(y2))
+}
+
+// begin opens a drawing with its title and description for those who do not see it.
+func (c *canvas) begin(id string, width, height float64, title, description string) {
+	c.printf(`<svg xmlns="http://www.w3.org/2000/svg" class="figure" role="img" viewBox="0 0 %s %s" width="%s" height="%s" aria-labelledby="%s-title %s-text">`,
+		short(width), short(height), short(width), short(height), clean(id), clean(id))
+	c.printf(`<title id="%s-title">%s</title><desc id="%s-text">%s</desc>`, clean(id), clean(title), clean(id), clean(description))
+}
+
+// stacked draws panels over one horizontal axis.
+func stacked(id, title, description string, panels []*panel, x *axis, xHeading func(power int) string) (string, bool) {
+	left := leastLeft
+	for _, p := range panels {
+		if !p.scale() {
+			return "", false
+		}
+		for _, t := range p.y.ticks {
+			left = math.Max(left, textWidth(t.label)+14)
+		}
+	}
+	x.from, x.to = left, pageWidth-rightRoom
+	var c canvas
+	height := float64(len(panels))*(panelHeight+headRoom+panelGap) - panelGap + footRoom
+	c.begin(id, pageWidth, height, title, description)
+	top := headRoom
+	for k, p := range panels {
+		p.y.from, p.y.to = top+panelHeight, top
+		c.panel(p, x, k == len(panels)-1)
+		top += panelHeight + headRoom + panelGap
+	}
+	c.text((x.from+x.to)/2, height-6, "middle", "", xHeading(x.power))
+	c.WriteString("</svg>")
+	return c.String(), true
+}
+
+// scale chooses the panel's vertical axis.
+func (p *panel) scale() bool {
+	low, high := math.Inf(1), math.Inf(-1)
+	see := func(v float64) {
+		if !math.IsNaN(v) && !math.IsInf(v, 0) {
+			low, high = math.Min(low, v), math.Max(high, v)
+		}
+	}
+	for _, c := range p.curves {
+		for _, v := range c.y {
+			see(v)
+		}
+	}
+	if low > high {
+		return false
+	}
+	// A limit is drawn where it does not squeeze the curve flat.
+	span := math.Max(high-low, math.Max(math.Abs(low), math.Abs(high)))
+	for _, c := range p.curves {
+		for _, limit := range []*float64{c.low, c.high} {
+			if limit != nil && *limit > low-4*span && *limit < high+4*span {
+				see(*limit)
+			}
+		}
+	}
+	for _, level := range p.levels {
+		if level > low-0.4*(high-low) && level < high+0.4*(high-low) {
+			see(level)
+		}
+	}
+	if high-low < 1e-9*math.Max(math.Abs(low), math.Abs(high)) {
+		// What differs by rounding alone is a constant.
+		low = (low + high) / 2
+		high = low
+	}
+	if p.step > 0 {
+		step := p.step
+		for (high-low)/step > 6 {
+			step *= 2
+		}
+		first, last := math.Floor(low/step), math.Ceil(high/step)
+		if first == last {
+			last++
+		}
+		p.y = (&axis{low: first * step, high: last * step}).labelled(step, first, last)
+		return true
+	}
+	p.y = linear(low, high, 4, true)
+	return true
+}
+
+func (c *canvas) panel(p *panel, x *axis, last bool) {
+	bottom, top := p.y.from, p.y.to
+	for _, v := range x.fine {
+		c.line("grid", x.place(v), bottom, x.place(v), bottom-4)
+	}
+	end := -1.0
+	for _, t := range x.ticks {
+		at := x.place(t.at)
+		c.line("grid", at, bottom, at, top)
+		half := textWidth(t.label) / 2
+		if last && at-half > end {
+			c.text(at, bottom+16, "middle", "", t.label)
+			end = at + half + 4
+		}
+	}
+	for _, t := range p.y.ticks {
+		at := p.y.place(t.at)
+		class := "grid"
+		if t.at == 0 {
+			class = "axis"
+		}
+		c.line(class, x.from, at, x.to, at)
+		c.text(x.from-7, at+4, "end", "", t.label)
+	}
+	for _, level := range p.levels {
+		if level >= p.y.low && level <= p.y.high {
+			c.line("axis", x.from, p.y.place(level), x.to, p.y.place(level))
+		}
+	}
+	c.head(p, x)
+	for k, one := range p.curves {
+		for _, limit := range []*float64{one.low, one.high} {
+			if limit != nil && *limit >= p.y.low && *limit <= p.y.high {
+				c.line("limit", x.from, p.y.place(*limit), x.to, p.y.place(*limit))
+			}
+		}
+		c.printf(`<path class="curve %s" d="%s"/>`, curveClasses[k%mostCurves], trace(one, x, p.y))
+	}
+	for _, m := range p.marks {
+		c.mark(m, x, p.y)
+	}
+}
+
+// head writes above a panel what it shows: the quantity, and the curves where there are several.
+func (c *canvas) head(p *panel, x *axis) {
+	at, top := x.from, p.y.to-9
+	head := p.heading(p.y.power)
+	room := x.to - x.from
+	if len(p.curves) < 2 {
+		c.text(at, top, "start", "", shortened(head, room))
+		return
+	}
+	if head != "" {
+		head = shortened(head, room/3)
+		c.text(at, top, "start", "", head)
+		at += textWidth(head) + 14
+	}
+	each := (x.to - at) / float64(len(p.curves))
+	for k, one := range p.curves {
+		name := shortened(one.name, each-40)
+		c.line("curve "+curveClasses[k], at, top-4, at+24, top-4)
+		c.text(at+29, top, "start", "", name)
+		at += math.Min(each, textWidth(name)+46)
+	}
+}
+
+func (c *canvas) mark(m mark, x, y *axis) {
+	px, py := x.place(m.x), y.place(m.y)
+	c.printf(`<circle class="mark" cx="%s" cy="%s" r="3.5"/>`, short(px), short(py))
+	if m.text == "" {
+		return
+	}
+	anchor, at := "start", px+8
+	if px+8+textWidth(m.text) > x.to {
+		anchor, at = "end", px-8
+	}
+	up := py - 8
+	if up < y.to+12 {
+		up = py + 16
+	}
+	c.text(at, up, anchor, "", m.text)
+}
+
+// trace writes a curve as a path of relative steps. Where many points fall on one place
+// of the horizontal axis, the first, the lowest, the highest and the last are kept, so
+// that nothing of the curve's extent is lost.
+func trace(one curve, x, y *axis) string {
+	var b strings.Builder
+	var penX, penY int // in tenths, as written
+	down := false
+	put := func(px, py int) {
+		switch {
+		case !down:
+			b.WriteString("M" + tenths(px) + " " + tenths(py) + "l")
+			down = true
+		case px == penX && py == penY:
+			return
+		default:
+			dx, dy := tenths(px-penX), tenths(py-penY)
+			b.WriteString(dx)
+			if !strings.HasPrefix(dy, "-") {
+				b.WriteByte(' ')
+			}
+			b.WriteString(dy)
+			b.WriteByte(' ')
+		}
+		penX, penY = px, py
+	}
+	column := newColumn(put)
+	for i, t := range one.x {
+		v := one.y[i]
+		if math.IsNaN(v) || math.IsInf(v, 0) || math.IsNaN(t) || x.isLog && t <= 0 {
+			column.flush()
+			down = false
+			continue
+		}
+		px, py := tenth(x.place(t)), tenth(y.place(v))
+		if one.staircase && down {
+			column.add(px, column.last)
+		}
+		column.add(px, py)
+	}
+	column.flush()
+	return strings.TrimRight(strings.TrimSuffix(b.String(), "l"), " ")
+}
+
+// far beyond any drawing, and within what an int holds
+const farAway = 1e7
+
+func tenth(x float64) int { return int(math.Round(math.Max(-farAway, math.Min(farAway, x*10)))) }
+
+// tenths writes a whole number of tenths.
+func tenths(n int) string {
+	sign := ""
+	if n < 0 {
+		sign, n = "-", -n
+	}
+	if n%10 == 0 {
+		return sign + strconv.Itoa(n/10)
+	}
+	return sign + strconv.Itoa(n/10) + "." + strconv.Itoa(n%10)
+}
+
+// column gathers the points of one place.
+type column struct {
+	put                           func(px, py int)
+	at, first, lowest, high, last int
+	lowFirst, filled              bool
+	few                           []int
+}
+
+func newColumn(put func(px, py int)) *column { return &column{put: put} }
+
+// how wide a place is, in tenths of the drawing's unit
+const placeWidth = 6
+
+func (c *column) add(px, py int) {
+	if c.filled && px/placeWidth != c.at/placeWidth {
+		c.flush()
+	}
+	if !c.filled {
+		*c = column{put: c.put, at: px, first: py, lowest: py, high: py, filled: true, few: c.few[:0]}
+	}
+	c.few = append(c.few, px, py)
+	if py < c.lowest {
+		c.lowest, c.lowFirst = py, false
+	}
+	if py > c.high {
+		c.high, c.lowFirst = py, true
+	}
+	c.last = py
+}
+
+func (c *column) flush() {
+	if !c.filled {
+		return
+	}
+	if len(c.few) <= 8 {
+		for i := 0; i < len(c.few); i += 2 {
+			c.put(c.few[i], c.few[i+1])
+		}
+	} else {
+		a, b := c.high, c.lowest
+		if c.lowFirst {
+			a, b = b, a
+		}
+		for _, py := range []int{c.first, a, b, c.last} {
+			c.put(c.at, py)
+		}
+	}
+	c.filled = false
+	c.few = c.few[:0]
+}

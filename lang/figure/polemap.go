@@ -1,0 +1,214 @@
+package figure
+
+import (
+	"fmt"
+	"math"
+	"strings"
+
+	"gainwright/lang/value"
+)
+
+// PoleMapTitle begins the title of a report that is drawn as a pole map. Its table has the
+// columns "what" ("pole", "zero", "wanted") and "place"; its fields may hold damping and
+// decay, what is required of every pole, and every, the sample time in s.
+const PoleMapTitle = "pole map"
+
+// IsPoleMap tells whether a report is drawn as a pole map.
+func IsPoleMap(r *value.Report) bool {
+	return strings.HasPrefix(r.Title, PoleMapTitle) && len(r.Columns) >= 2 && r.Columns[0] == "what" && r.Columns[1] == "place"
+}
+
+type spot struct {
+	what   string
+	re, im float64
+}
+
+func spots(r *value.Report) []spot {
+	var all []spot
+	for _, row := range r.Rows {
+		if len(row) < 2 {
+			continue
+		}
+		what, ok := row[0].(value.Text)
+		if !ok {
+			continue
+		}
+		s := spot{what: string(what)}
+		switch x := value.Force(row[1]).(type) {
+		case value.Number:
+			s.re = x.Float64()
+		case value.Complex:
+			z := x.Complex128()
+			s.re, s.im = real(z), imag(z)
+		default:
+			continue
+		}
+		if !math.IsNaN(s.re+s.im) && !math.IsInf(s.re, 0) && !math.IsInf(s.im, 0) {
+			all = append(all, s)
+		}
+	}
+	return all
+}
+
+func fieldNumber(r *value.Report, name string) (float64, bool) {
+	for _, f := range r.Fields {
+		if f.Name == name {
+			switch x := value.Force(f.Value).(type) {
+			case value.Number:
+				return x.Float64(), true
+			case value.Quantity:
+				return x.Magnitude.Float64(), true
+			}
+		}
+	}
+	return 0, false
+}
+
+// the height of the drawing's field
+const mapHeight = 330.0
+
+// drawPoleMap draws poles as crosses, zeros as circles and wanted poles as squares, with
+// equal scales on both axes, and shades where no pole may lie.
+func drawPoleMap(r *value.Report, id string) (string, bool) {
+	all := spots(r)
+	if len(all) == 0 {
+		return "", false
+	}
+	_, sampled := fieldNumber(r, "every")
+	left, right, up := math.Inf(1), math.Inf(-1), 0.0
+	for _, s := range all {
+		left, right, up = math.Min(left, s.re), math.Max(right, s.re), math.Max(up, math.Abs(s.im))
+	}
+	left, right = math.Min(left, 0), math.Max(right, 0)
+	if sampled {
+		left, right, up = math.Min(left, -1), math.Max(right, 1), math.Max(up, 1)
+	}
+	x, y := mapAxes(left, right, up)
+	var c canvas
+	height := headRoom + mapHeight + footRoom
+	c.begin(id, pageWidth, height, "Pole map", describeMap(all, sampled))
+	c.printf(`<clipPath id="%s-field"><rect x="%s" y="%s" width="%s" height="%s"/></clipPath>`, clean(id), short(x.from), short(y.to), short(x.to-x.from), short(y.from-y.to))
+	c.printf(`<g clip-path="url(#%s-field)">`, clean(id))
+	c.forbidden(r, x, y, sampled)
+	c.WriteString("</g>")
+	c.mapGrid(x, y)
+	if sampled {
+		c.printf(`<ellipse class="axis" cx="%s" cy="%s" rx="%s" ry="%s"/>`, short(x.place(0)), short(y.place(0)),
+			short(x.place(1)-x.place(0)), short(y.place(0)-y.place(1)))
+	}
+	for _, s := range all {
+		c.spot(s.what, x.place(s.re), y.place(s.im))
+	}
+	c.mapKey(all, x)
+	c.WriteString("</svg>")
+	return c.String(), true
+}
+
+// mapAxes makes two axes of equal scale around the places.
+func mapAxes(left, right, up float64) (x, y *axis) {
+	width, height := right-left, 2*up
+	size := math.Max(width, height)
+	if size == 0 {
+		size = 2
+	}
+	fieldWidth := pageWidth - rightRoom - 60
+	scale := math.Max(math.Max(width*1.16, size*0.1)/fieldWidth, math.Max(height*1.16, size*0.1)/mapHeight)
+	centre := (left + right) / 2
+	x = linear(centre-scale*fieldWidth/2, centre+scale*fieldWidth/2, 8, false)
+	y = linear(-scale*mapHeight/2, scale*mapHeight/2, 6, false)
+	x.from, x.to = 60, pageWidth-rightRoom
+	y.from, y.to = headRoom+mapHeight, headRoom
+	return x, y
+}
+
+func (c *canvas) mapGrid(x, y *axis) {
+	for _, t := range x.ticks {
+		class := "grid"
+		if t.at == 0 {
+			class = "axis"
+		}
+		c.line(class, x.place(t.at), y.from, x.place(t.at), y.to)
+		c.text(x.place(t.at), y.from+16, "middle", "", t.label)
+	}
+	for _, t := range y.ticks {
+		class := "grid"
+		if t.at == 0 {
+			class = "axis"
+		}
+		c.line(class, x.from, y.place(t.at), x.to, y.place(t.at))
+		c.text(x.from-7, y.place(t.at)+4, "end", "", t.label)
+	}
+	c.text((x.from+x.to)/2, y.from+footRoom-6, "middle", "", heading("real part", "", x.power))
+	c.text(x.from, y.to-9, "start", "", heading("imaginary part", "", y.power))
+}
+
+// forbidden shades where no pole may lie: outside the stable part, and outside what is required.
+func (c *canvas) forbidden(r *value.Report, x, y *axis, sampled bool) {
+	if sampled {
+		return
+	}
+	decay, _ := fieldNumber(r, "decay")
+	edge := x.place(-decay)
+	c.printf(`<rect class="shade" x="%s" y="%s" width="%s" height="%s"/>`, short(edge), short(y.to), short(math.Max(0, x.to-edge)), short(y.from-y.to))
+	damping, ok := fieldNumber(r, "damping")
+	if !ok || damping <= 0 || damping >= 1 {
+		return
+	}
+	// The poles of this damping lie on two rays; what lies between them and the imaginary axis is shaded.
+	reach := 2 * math.Max(math.Abs(x.low), y.high) / damping
+	slope := math.Sqrt(1 - damping*damping)
+	for _, side := range []float64{1, -1} {
+		c.printf(`<path class="shade" d="M%s %sL%s %sL%s %sZ"/>`, short(x.place(0)), short(y.place(0)),
+			short(x.place(-damping*reach)), short(y.place(side*slope*reach)), short(x.place(0)), short(y.place(side*reach)))
+		c.line("limit", x.place(0), y.place(0), x.place(-damping*reach), y.place(side*slope*reach))
+	}
+}
+
+func (c *canvas) spot(what string, px, py float64) {
+	switch what {
+	case "pole":
+		c.printf(`<path class="pole" d="M%s %sl10 10m0-10l-10 10"/>`, short(px-5), short(py-5))
+	case "zero":
+		c.printf(`<circle class="zero" cx="%s" cy="%s" r="5"/>`, short(px), short(py))
+	default:
+		c.printf(`<rect class="wanted" x="%s" y="%s" width="16" height="16"/>`, short(px-8), short(py-8))
+	}
+}
+
+// mapKey names the signs at the top on the right.
+func (c *canvas) mapKey(all []spot, x *axis) {
+	has := map[string]bool{}
+	for _, s := range all {
+		has[s.what] = true
+	}
+	at := x.to
+	for _, what := range []string{"wanted", "zero", "pole"} {
+		if !has[what] {
+			continue
+		}
+		w := textWidth(what)
+		c.text(at-w, headRoom-9, "start", "", what)
+		c.spot(what, at-w-13, headRoom-13)
+		at -= w + 34
+	}
+}
+
+func describeMap(all []spot, sampled bool) string {
+	parts := make([]string, 0, len(all))
+	for i, s := range all {
+		if i == 40 {
+			parts = append(parts, fmt.Sprintf("and %d more", len(all)-i))
+			break
+		}
+		place := brief(s.re)
+		if s.im != 0 {
+			place += fmt.Sprintf(" %s %si", map[bool]string{true: "−", false: "+"}[s.im < 0], brief(math.Abs(s.im)))
+		}
+		parts = append(parts, s.what+" at "+place)
+	}
+	plane := "the complex plane"
+	if sampled {
+		plane = "the plane of z with the unit circle"
+	}
+	return "Places in " + plane + ": " + strings.Join(parts, "; ") + "."
+}

@@ -1,0 +1,221 @@
+// Package report makes one document of a run: the text of a script or a notebook with its
+// results beside it, in reading order.
+//
+// [New] takes what a run said and gives a [Document]. [Document.HTML] writes it as one
+// page that needs neither network nor script; the results stand in it once more as data,
+// which [ReadKept] reads back and [Compare] holds against a later run. [Document.Markdown]
+// writes the same as Markdown, with the figures as files.
+//
+// The text is not trusted: everything from it is escaped, HTML in a notebook is shown as
+// text, pictures are read below the run's folder only, and the page forbids itself to load
+// or run anything. The same run gives the same bytes.
+package report
+
+import (
+	"crypto/sha256"
+	"encoding/hex"
+	"io/fs"
+	"path"
+	"path/filepath"
+	"strings"
+
+	"gainwright/lang/diag"
+	"gainwright/lang/eval"
+	"gainwright/lang/render"
+	"gainwright/lang/syntax"
+)
+
+// Run is what a document is made of.
+type Run struct {
+	Source  *diag.Source
+	Events  []eval.Event // all of them, bindings too
+	Options render.Options
+	Version string // of the program
+	Folder  fs.FS  // pictures are read below it; nil when none may
+}
+
+// Document is a run in reading order.
+type Document struct {
+	Title, Author, Date, Number string // Number is the document's own, from the front matter
+	File                        string
+	Hash                        string // SHA-256 of the file, hexadecimal
+	Version                     string
+	Summary                     Summary
+
+	run      Run
+	file     *syntax.File
+	results  [][]Result // by statement
+	loose    []Result   // what belongs to no statement
+	reached  int        // statements before this one were run
+	figures  int
+	prepared []byte // the body, once it is laid out
+}
+
+// Result is one thing the run said.
+type Result struct {
+	Event   eval.Event
+	Shown   *render.Sheet
+	Verdict *render.Verdict
+	Failure string // an error as the terminal shows it
+	Note    string
+	File    string // the file it comes from, where that is another one
+	Line    int
+}
+
+// New puts a run in order.
+func New(run Run) *Document {
+	sum := sha256.Sum256([]byte(run.Source.Text))
+	d := &Document{run: run, File: shownName(run.Source.Name), Hash: hex.EncodeToString(sum[:]), Version: run.Version}
+	d.readFrontMatter()
+	d.parse()
+	d.distribute()
+	d.summarise()
+	return d
+}
+
+// shownName is a file's name without the machine's own folders.
+func shownName(name string) string {
+	name = filepath.ToSlash(name)
+	if path.IsAbs(name) || strings.HasPrefix(name, "../") || filepath.VolumeName(name) != "" {
+		return path.Base(name)
+	}
+	return path.Clean(name)
+}
+
+func (d *Document) isNotebook() bool { return syntax.IsNotebook(d.run.Source.Name) }
+
+func (d *Document) readFrontMatter() {
+	if d.isNotebook() {
+		values, _ := syntax.FrontMatter(d.run.Source)
+		d.Title, d.Author, d.Date, d.Number = values["title"], values["author"], values["date"], values["document"]
+	}
+	if d.Title == "" {
+		base := path.Base(d.File)
+		d.Title = strings.ReplaceAll(strings.TrimSuffix(base, path.Ext(base)), "_", " ")
+	}
+}
+
+// parse reads the statements again for their places; what stands behind an error of the
+// text is not among them.
+func (d *Document) parse() {
+	read := syntax.Parse
+	if d.isNotebook() {
+		read = syntax.ParseNotebook
+	}
+	file, _ := read(d.run.Source)
+	if file == nil {
+		file = &syntax.File{Source: d.run.Source}
+	}
+	for _, e := range d.run.Events {
+		if e.Error != nil && (e.Error.Source == nil || e.Error.Source == d.run.Source) && statementAt(file, place(e)) < 0 && e.Error.Source != nil {
+			file.Statements = append(file.Statements, unread{d.wholeLine(e.Error.Span.Start)})
+		}
+	}
+	d.file = file
+	d.results = make([][]Result, len(file.Statements))
+}
+
+// unread is the line of an error in the text itself, where there is no statement.
+type unread struct{ span diag.Span }
+
+// Extent gives the line's place.
+func (u unread) Extent() diag.Span { return u.span }
+
+func (d *Document) wholeLine(at int) diag.Span {
+	text := d.run.Source.Text
+	at = min(max(at, 0), len(text))
+	span := diag.Span{Start: strings.LastIndexByte(text[:at], '\n') + 1, End: len(text)}
+	if k := strings.IndexByte(text[at:], '\n'); k >= 0 {
+		span.End = at + k
+	}
+	return span
+}
+
+// distribute gives each event to its statement. What a used file says belongs to the
+// statement that uses it.
+func (d *Document) distribute() {
+	last := -1
+	for _, e := range d.run.Events {
+		at := -1
+		if e.Source == d.run.Source || e.Source == nil {
+			at = statementAt(d.file, place(e))
+		} else {
+			at = d.nextUse(last)
+		}
+		if at > last {
+			last = at
+		}
+		r, ok := d.result(e)
+		if !ok {
+			continue
+		}
+		if at < 0 {
+			d.loose = append(d.loose, r)
+			continue
+		}
+		d.results[at] = append(d.results[at], r)
+	}
+	d.reached = len(d.run.Source.Text)
+	for _, e := range d.run.Events {
+		if e.Error != nil && last >= 0 {
+			d.reached = d.file.Statements[last].Extent().End
+		}
+	}
+}
+
+func place(e eval.Event) diag.Span {
+	if e.Error != nil && e.Span.IsZero() {
+		return e.Error.Span
+	}
+	return e.Span
+}
+
+func statementAt(file *syntax.File, span diag.Span) int {
+	atEnd := -1
+	for i, s := range file.Statements {
+		x := s.Extent()
+		if span.Start >= x.Start && span.Start < max(x.End, x.Start+1) {
+			return i
+		}
+		if _, ok := s.(unread); ok && span.Start == x.End {
+			atEnd = i // what is missing is missed behind the line's last character
+		}
+	}
+	return atEnd
+}
+
+func (d *Document) nextUse(after int) int {
+	for i := max(after, 0); i < len(d.file.Statements); i++ {
+		if _, ok := d.file.Statements[i].(*syntax.Use); ok {
+			return i
+		}
+	}
+	return max(after, -1)
+}
+
+func (d *Document) result(e eval.Event) (Result, bool) {
+	r := Result{Event: e, Line: e.Line}
+	if e.Source != nil && e.Source != d.run.Source {
+		r.File = shownName(e.Source.Name)
+	}
+	switch {
+	case e.Shown != nil:
+		sheet := render.SheetOf(e.Text, e.Shown.Value, e.Shown.In, d.run.Options)
+		sheet.Figure = d.draw(e.Shown.Value)
+		r.Shown = &sheet
+	case e.Requirement != nil, e.Claim != nil:
+		v := render.VerdictOf(e, d.run.Options)
+		r.Verdict = &v
+	case e.Error != nil:
+		shown := *e.Error
+		if shown.Source != nil {
+			shown.Source = diag.NewSource(shownName(shown.Source.Name), shown.Source.Text)
+		}
+		r.Failure = strings.TrimRight(shown.Render(), "\n")
+	case e.Note != "":
+		r.Note = e.Note
+	default:
+		return r, false
+	}
+	return r, true
+}
