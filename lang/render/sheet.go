@@ -33,6 +33,7 @@ type SheetTable struct {
 	Labels    []string   // of the rows; nil for none
 	Rows      [][]string // texts, row by row
 	Numeric   []bool     // by column
+	Paired    []bool     // by column: holds numbers, some of them conjugate pairs
 	RuleAt    int        // a vertical rule stands before this column; 0 for none
 	RuleBelow int        // a horizontal rule stands before this row; 0 for none
 	IsMatrix  bool
@@ -253,7 +254,7 @@ func reportTable(r *value.Report, o Options) *SheetTable {
 		r = &short
 	}
 	t := newTable(r, o)
-	out := &SheetTable{Heads: t.heads, Numeric: t.numeric, LeftOut: leftOut}
+	out := &SheetTable{Heads: t.heads, Numeric: t.numeric, Paired: t.paired, LeftOut: leftOut}
 	for i := range r.Rows {
 		row := make([]string, len(t.cells))
 		for j := range t.cells {

@@ -25,6 +25,7 @@ var cautionsText string
 var pages = template.Must(template.New("page").Funcs(template.FuncMap{
 	"trim":    strings.TrimSpace,
 	"numeric": func(t *render.SheetTable, j int) bool { return j < len(t.Numeric) && t.Numeric[j] },
+	"paired":  func(t *render.SheetTable, j int) bool { return j < len(t.Paired) && t.Paired[j] },
 	"ruled":   func(at, j int) bool { return at > 0 && at == j },
 	"label":   func(t *render.SheetTable, i int) string { return t.Labels[i] },
 	"math":    func(s string) template.HTML { return template.HTML(s) }, // built from escaped texts by render

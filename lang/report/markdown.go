@@ -126,7 +126,11 @@ func (m *markdownWriter) foot() {
 
 func (m *markdownWriter) row(r row) {
 	for _, p := range r.Comment {
-		m.printf("%s\n\n", escaped(p))
+		if p.Kept {
+			m.printf("%s\n", fence("text", p.Text))
+			continue
+		}
+		m.printf("%s\n\n", escaped(p.Text))
 	}
 	if len(r.Code) > 0 {
 		var code strings.Builder

@@ -6,7 +6,6 @@ import (
 	"html"
 	"io"
 	"io/fs"
-	"net/http"
 	"net/url"
 	"path"
 	"strconv"
@@ -142,15 +141,29 @@ func (p *prose) load(destination string) (data, why string) {
 	case len(content) > largestPicture:
 		return "", "it is larger than 4 MiB"
 	}
-	kind := http.DetectContentType(content)
-	if strings.EqualFold(path.Ext(name), ".svg") && bytes.Contains(content, []byte("<svg")) {
-		kind = "image/svg+xml"
+	kind := pictureKind(name, content)
+	if kind == "" {
+		return "", "it is no PNG, JPEG, GIF, WebP or SVG picture"
 	}
-	switch kind {
-	case "image/png", "image/jpeg", "image/gif", "image/webp", "image/svg+xml":
-		return "data:" + kind + ";base64," + base64.StdEncoding.EncodeToString(content), ""
+	return "data:" + kind + ";base64," + base64.StdEncoding.EncodeToString(content), ""
+}
+
+// pictureKind tells a picture by how its content begins.
+func pictureKind(name string, content []byte) string {
+	begins := func(s string) bool { return bytes.HasPrefix(content, []byte(s)) }
+	switch {
+	case begins("\x89PNG\r\n\x1a\n"):
+		return "image/png"
+	case begins("\xff\xd8\xff"):
+		return "image/jpeg"
+	case begins("GIF87a"), begins("GIF89a"):
+		return "image/gif"
+	case begins("RIFF") && len(content) > 12 && string(content[8:12]) == "WEBP":
+		return "image/webp"
+	case strings.EqualFold(path.Ext(name), ".svg") && bytes.Contains(content, []byte("<svg")):
+		return "image/svg+xml"
 	}
-	return "", "it is no PNG, JPEG, GIF, WebP or SVG picture"
+	return ""
 }
 
 // fenced renders a gain block as rows, any other as code.

@@ -12,7 +12,7 @@ import (
 // row is a piece of the text with what the run said about it; or prose.
 type row struct {
 	Prose   template.HTML // of a notebook
-	Comment []string      // of a script: paragraphs
+	Comment []paragraph   // of a script
 	Lead    bool          // the script's first comment
 	Code    []codePart
 	First   int // line of the code
@@ -170,21 +170,34 @@ func opened(line string) int {
 	return n
 }
 
+// paragraph is a piece of a comment; one whose lines are indented keeps them.
+type paragraph struct {
+	Text string
+	Kept bool
+}
+
 // paragraphs joins comment lines; an empty comment begins another paragraph.
-func paragraphs(lines []string) []string {
-	var out []string
+func paragraphs(lines []string) []paragraph {
+	var out []paragraph
 	var open []string
+	kept := false
 	end := func() {
 		if len(open) > 0 {
-			out = append(out, strings.Join(open, "\n"))
+			out = append(out, paragraph{strings.Join(open, "\n"), kept})
 		}
 		open = nil
 	}
 	for _, l := range lines {
-		if l = strings.TrimSpace(strings.TrimLeft(l, "#")); l == "" {
+		l = strings.TrimRight(strings.TrimLeft(l, "#"), " \t\r")
+		isIndented := strings.HasPrefix(l, "  ") || strings.HasPrefix(l, " \t")
+		if l = strings.TrimPrefix(l, " "); strings.TrimSpace(l) == "" {
 			end()
 			continue
 		}
+		if isIndented != kept {
+			end()
+		}
+		kept = isIndented
 		open = append(open, l)
 	}
 	end()

@@ -140,7 +140,13 @@ func (d *Document) grounds() []Ground {
 		}
 	}
 	if exact+floating > 0 {
-		text := fmt.Sprintf("%s exact; %s floating", plural(exact, "shown value is", "shown values are"), plural(floating, "is", "are"))
+		text := plural(exact, "shown value is", "shown values are") + " exact; " + plural(floating, "is", "are") + " floating"
+		switch {
+		case floating == 0:
+			text = "every shown value is exact"
+		case exact == 0:
+			text = "every shown value is floating"
+		}
 		grounds = append(grounds, Ground{"arithmetic", text})
 	}
 	if floating > 0 {
