@@ -71,6 +71,13 @@ func (x *terminal) listen() {
 	}
 }
 
+// seen is all that the terminal showed so far.
+func (x *terminal) seen() string {
+	x.mutex.Lock()
+	defer x.mutex.Unlock()
+	return x.text.String()
+}
+
 func (x *terminal) send(text string) {
 	x.t.Helper()
 	if _, err := x.pty.WriteString(text); err != nil {
@@ -83,9 +90,7 @@ func (x *terminal) expect(text string) {
 	x.t.Helper()
 	deadline := time.Now().Add(patience)
 	for {
-		x.mutex.Lock()
-		all := x.text.String()
-		x.mutex.Unlock()
+		all := x.seen()
 		if i := strings.Index(all[x.read:], text); i >= 0 {
 			x.read += i + len(text)
 			return
@@ -278,7 +283,7 @@ func TestColourOnATerminalUnlessRefused(t *testing.T) {
 	y.send("require 1 > 2\r")
 	y.expect("missed     1 > 2")
 	y.leave()
-	if strings.Contains(y.text.String(), "\x1b[31m") {
+	if strings.Contains(y.seen(), "\x1b[31m") {
 		t.Error("coloured in spite of NO_COLOR")
 	}
 }
@@ -304,7 +309,7 @@ func TestTheTerminalIsGivenBack(t *testing.T) {
 	x.expect("» ")
 	x.leave()
 	<-x.ended
-	lines := strings.Fields(x.text.String()[x.read:])
+	lines := strings.Fields(x.seen()[x.read:])
 	if !slices.Contains(lines, "echo") || slices.Contains(lines, "-echo") {
 		t.Errorf("the terminal's modes afterwards: %q", lines)
 	}

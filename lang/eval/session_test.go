@@ -270,13 +270,9 @@ func TestCancelStopsALoop(t *testing.T) {
 		"define f(x) = if x > 0 { f(x + 1) + f(x) } else { 0 }\ntwice(f, 1)",
 		"A = ones(1900) * ones(1900)ᵀ\nA * A * A * A",
 	} {
-		// The best of several, because the machine may be busy with something else.
-		best := time.Hour
-		for range 5 {
-			best = min(best, stopAfter(t, text, 50*time.Millisecond))
-		}
-		if best > 50*time.Millisecond {
-			t.Errorf("%s: stopped after %v", text, best)
+		// Alone it takes a few milliseconds; the bound only tells stopping from running on, whatever else the machine does.
+		if took := stopAfter(t, text, 50*time.Millisecond); took > 5*time.Second {
+			t.Errorf("%s: stopped after %v", text, took)
 		}
 	}
 }
