@@ -29,7 +29,6 @@ func itoa(n int) string { return strconv.Itoa(n) }
 type prose struct {
 	document *Document
 	offset   int // of the Markdown in the source
-	failure  error
 }
 
 func markdown(p *prose) goldmark.Markdown {

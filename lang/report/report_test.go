@@ -112,7 +112,7 @@ func TestTheDataIsWholeAndParses(t *testing.T) {
 
 func TestTheSameRunGivesTheSameBytes(t *testing.T) {
 	for name, text := range map[string]string{"a.md": hostile, "a.gain": "# Lead\nx = 2\n[[1, x], [3, 1/3]]\n(s + 1)/(s^2 + 0.5*s + 1)\n"} {
-		if page(t, name, text) != page(t, name, text) {
+		if first, second := page(t, name, text), page(t, name, text); first != second {
 			t.Errorf("%s gives other bytes the second time", name)
 		}
 		a, _ := run(t, name, text).Markdown("out")

@@ -71,7 +71,7 @@ func lineStart(text string, at, from int) int {
 }
 
 func (d *Document) codeRow(code string, offset int, notRun bool) row {
-	trimmed := strings.TrimLeft(code, "\r\n")
+	var trimmed string
 	blank := 0
 	for rest := code; ; {
 		line, after, found := strings.Cut(rest, "\n")
