@@ -7,16 +7,26 @@ import (
 )
 
 func (a *app) checkCommand() *cobra.Command {
+	var against string
 	c := &cobra.Command{
 		Use:   "check FILE…",
 		Short: "Run files and show only their requirements and claims",
 		Long: `check runs each file by itself and shows its requirements and claims, nothing else.
-The exit status is the worst of all files.`,
+The exit status is the worst of all files.
+
+With --against it runs one file and lists each shown value, requirement and claim that
+is not as in a report made earlier; the exit status is 1 when there is one, else 0.`,
 		Args:              needsFiles("check"),
 		ValidArgsFunction: completeDesignFiles,
 		RunE: func(_ *cobra.Command, args []string) error {
 			if err := a.checkFlags(); err != nil {
 				return err
+			}
+			if against != "" {
+				if len(args) > 1 {
+					return usage("", "one file is checked against a report, %d were named", len(args))
+				}
+				return a.checkAgainst(args[0], against)
 			}
 			for i, name := range args {
 				if len(args) > 1 && !a.json {
@@ -39,6 +49,7 @@ The exit status is the worst of all files.`,
 		},
 	}
 	a.runFlags(c)
+	c.Flags().StringVar(&against, "against", "", "a report (OUT.html) made earlier; list what differs from it")
 	return c
 }
 

@@ -7,6 +7,7 @@ import (
 	"encoding/xml"
 	"errors"
 	"io"
+	"math"
 	"os"
 	"regexp"
 	"strings"
@@ -16,14 +17,18 @@ import (
 	"gainwright/lang/diag"
 	"gainwright/lang/eval"
 	"gainwright/lang/report"
+	"gainwright/lang/value"
 )
 
-// run makes a document of a text that needs no built-ins.
+// table holds one function whose value is floating, √2 with 15.95 digits.
+var table = []*value.Builtin{{Name: "root_of_two", Func: func(*value.Call) (value.Value, error) { return value.Float(math.Sqrt2), nil }}}
+
+// run makes a document of a text that needs no other built-ins.
 func run(t *testing.T, name, text string) *report.Document {
 	t.Helper()
 	src := diag.NewSource(name, text)
 	var events []eval.Event
-	eval.New(eval.Options{}).RunText(context.Background(), src, func(e eval.Event) { events = append(events, e) })
+	eval.New(eval.Options{Builtins: table}).RunText(context.Background(), src, func(e eval.Event) { events = append(events, e) })
 	folder := fstest.MapFS{"dot.svg": {Data: []byte(`<svg xmlns="http://www.w3.org/2000/svg"/>`)}, "note.png": {Data: []byte("no picture")}}
 	return report.New(report.Run{Source: src, Events: events, Version: "test", Folder: folder})
 }
@@ -182,3 +187,5 @@ func TestCautionsAreTheReadmes(t *testing.T) {
 		t.Error("lang/report/cautions.md and the README's cautions differ")
 	}
 }
+
+func source(text string) *diag.Source { return diag.NewSource("x.gain", text) }
