@@ -7,7 +7,6 @@ import (
 	"io"
 
 	"gainwright/lang/diag"
-	"gainwright/lang/exact"
 	"gainwright/lang/value"
 )
 
@@ -54,10 +53,10 @@ func matrixFromJSON(c *value.Call, data []byte) (value.Value, error) {
 		}
 		rows[i] = row
 	}
-	if err := value.CheckSize(len(rows), width, true); err != nil {
+	m, err := newStore(len(rows), width)
+	if err != nil {
 		return nil, err
 	}
-	m := exact.NewMatrix(len(rows), width)
 	for i, row := range rows {
 		for j, x := range row {
 			text := ""
@@ -71,10 +70,10 @@ func matrixFromJSON(c *value.Call, data []byte) (value.Value, error) {
 			if !ok {
 				return nil, value.Errf(diag.File, "file", "entry [%d, %d] is no number", i+1, j+1)
 			}
-			m.Set(i, j, r)
+			m.add(i, j, r, nil)
 		}
 	}
-	return value.ExactMatrix(m), nil
+	return m.matrix(c), nil
 }
 
 func lineAt(data []byte, offset int) int {

@@ -5,7 +5,6 @@ import (
 	"strconv"
 	"strings"
 
-	"gainwright/lang/exact"
 	"gainwright/lang/value"
 )
 
@@ -15,7 +14,7 @@ type marketReader struct {
 	coordinate             bool
 	field, symmetry        string
 	rows, columns, entries int
-	re, im                 *exact.Matrix
+	entriesOf              *store
 	line                   int
 }
 
@@ -67,7 +66,7 @@ func matrixMarket(c *value.Call, text string) (value.Value, error) {
 	if done != m.entries {
 		return nil, placed(c, m.line, "%d entries were announced, %d are there", m.entries, done)
 	}
-	return value.ExactComplexMatrix(m.re, m.im), nil
+	return m.entriesOf.matrix(c), nil
 }
 
 // firstRow is where column j of a dense file begins.
@@ -126,7 +125,8 @@ func (m *marketReader) sizes(words []string) error {
 	if m.symmetry != "general" && m.rows != m.columns {
 		return placed(m.c, m.line, "a %s matrix must be square; this one is %d×%d", m.symmetry, m.rows, m.columns)
 	}
-	if err := value.CheckSize(m.rows, m.columns, true); err != nil {
+	var err error
+	if m.entriesOf, err = newStore(m.rows, m.columns); err != nil {
 		return err
 	}
 	m.entries = m.rows * m.columns
@@ -138,7 +138,6 @@ func (m *marketReader) sizes(words []string) error {
 	case m.symmetry != "general":
 		m.entries = m.rows * (m.rows + 1) / 2
 	}
-	m.re, m.im = exact.NewMatrix(m.rows, m.columns), exact.NewMatrix(m.rows, m.columns)
 	return nil
 }
 
@@ -179,7 +178,7 @@ func (m *marketReader) store(i, j int, words []string) error {
 			return placed(m.c, m.line, "%q is no number", clipped(words[1]))
 		}
 	}
-	m.add(i, j, re, im)
+	m.entriesOf.add(i, j, re, im) // entries given twice are summed, as finite-element files mean them
 	if i == j || m.symmetry == "general" {
 		return nil
 	}
@@ -189,12 +188,6 @@ func (m *marketReader) store(i, j int, words []string) error {
 	case "hermitian":
 		im = new(big.Rat).Neg(im)
 	}
-	m.add(j, i, re, im)
+	m.entriesOf.add(j, i, re, im)
 	return nil
-}
-
-// add sums entries given twice, as finite-element files do.
-func (m *marketReader) add(i, j int, re, im *big.Rat) {
-	m.re.Set(i, j, new(big.Rat).Add(m.re.At(i, j), re))
-	m.im.Set(i, j, new(big.Rat).Add(m.im.At(i, j), im))
 }

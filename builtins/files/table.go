@@ -8,7 +8,6 @@ import (
 	"strings"
 
 	"gainwright/lang/diag"
-	"gainwright/lang/exact"
 	"gainwright/lang/value"
 )
 
@@ -103,20 +102,20 @@ func (t *table) matrix(c *value.Call) (value.Value, error) {
 	if len(t.cells) > 0 {
 		width = len(t.cells[0])
 	}
-	if err := value.CheckSize(len(t.cells), width, true); err != nil {
+	m, err := newStore(len(t.cells), width)
+	if err != nil {
 		return nil, err
 	}
-	m := exact.NewMatrix(len(t.cells), width)
 	for i, row := range t.cells {
 		for j, text := range row {
 			x, ok := number(text)
 			if !ok {
 				return nil, placed(c, t.lines[i], "entry %d is %q, which is no number", j+1, clipped(text))
 			}
-			m.Set(i, j, x)
+			m.add(i, j, x, nil)
 		}
 	}
-	v := value.ExactMatrix(m)
+	v := m.matrix(c)
 	v.Columns = t.names
 	return v, nil
 }

@@ -13,7 +13,7 @@ import (
 
 // Bounds on the number of entries of a matrix, exact and floating.
 const (
-	MostExactEntries    = 100_000
+	MostExactEntries    = 250_000
 	MostFloatingEntries = 4_000_000
 )
 
