@@ -6,7 +6,7 @@ import "gainwright/lang/value"
 // Builtins lists the family.
 func Builtins() []*value.Builtin {
 	var all []*value.Builtin
-	for _, group := range [][]*value.Builtin{dampingBuiltins, normBuiltins, sweepBuiltins, marginBuiltins} {
+	for _, group := range [][]*value.Builtin{dampingBuiltins, normBuiltins, sweepBuiltins, marginBuiltins, poleMapBuiltins} {
 		all = append(all, group...)
 	}
 	return all

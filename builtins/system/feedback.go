@@ -151,11 +151,7 @@ func ClosedByGain(p *value.Plant, k *value.Matrix, reference value.Value) (*valu
 		q.Inputs = referenceSignals(reference, cols)
 		return q, ch.Err
 	}
-	for _, e := range p.Extra {
-		if e.Name != referenceEnters {
-			continue
-		}
-		enters := e.Value.(*value.Matrix)
+	if enters := ReferenceEnters(p); enters != nil {
 		_, refs := enters.Dims()
 		outs, _ := p.D.Dims()
 		q.B = Block([][]*value.Matrix{{p.B, enters}})
@@ -165,6 +161,17 @@ func ClosedByGain(p *value.Plant, k *value.Matrix, reference value.Value) (*valu
 		}
 	}
 	return q, ch.Err
+}
+
+// ReferenceEnters tells how references drive the integrators of a plant made by
+// with_integrators: n×k, columns named; nil for any other plant.
+func ReferenceEnters(p *value.Plant) *value.Matrix {
+	for _, e := range p.Extra {
+		if m, ok := e.Value.(*value.Matrix); ok && e.Name == referenceEnters {
+			return m
+		}
+	}
+	return nil
 }
 
 func gainValues(v value.Value) *value.Matrix {
@@ -287,7 +294,7 @@ func compensator(c *value.Call) (value.Value, error) {
 		h.Outputs = append(h.Outputs, s)
 	}
 	abk := ch.Sub(p.A, ch.Mul(p.B, k))
-	if isCurrent(c.Args["observer"]) {
+	if IsCurrentForm(c.Args["observer"]) {
 		if !isZero(p.D) {
 			return nil, value.Errf(diag.Numerical, "observer", "the current form needs a plant without a direct term D")
 		}
@@ -301,7 +308,9 @@ func compensator(c *value.Call) (value.Value, error) {
 	return h, ch.Err
 }
 
-func isCurrent(v value.Value) bool {
+// IsCurrentForm tells whether an observer gain was made with form "current": its estimate
+// is corrected by the newest y.
+func IsCurrentForm(v value.Value) bool {
 	g, ok := v.(*value.Gain)
 	if !ok {
 		return false

@@ -242,7 +242,7 @@ func TestCaps(t *testing.T) {
 	_, err = Power(s, Int(1_000_000))
 	limit("(s+1)^10^6", err)
 	limit("10⁶×10⁶ floating", CheckSize(1_000_000, 1_000_000, false))
-	limit("400×400 exact", CheckSize(400, 400, true))
+	limit("600×600 exact", CheckSize(600, 600, true))
 	if err := CheckSize(400, 400, false); err != nil {
 		t.Errorf("400×400 floating: %v", err)
 	}
