@@ -11,6 +11,7 @@ import (
 	"golang.org/x/term"
 
 	"gainwright/lang/diag"
+	"gainwright/lang/figure"
 	"gainwright/lang/render"
 )
 
@@ -127,7 +128,7 @@ func terminalOf(stream any) (*os.File, bool) {
 
 // look gives the options for writing to a stream.
 func (a *app) look(stream io.Writer) render.Options {
-	o := render.Options{Digits: a.digits}
+	o := render.Options{Digits: a.digits, Drawing: figure.Terminal}
 	if f, ok := terminalOf(stream); ok {
 		if w, _, err := term.GetSize(int(f.Fd())); err == nil && w > 0 {
 			o.Width = w

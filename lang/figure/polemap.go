@@ -91,7 +91,7 @@ func drawPoleMap(r *value.Report, id string) (string, bool) {
 	c.printf(`<g clip-path="url(#%s-field)">`, clean(id))
 	c.forbidden(r, x, y, sampled)
 	c.WriteString("</g>")
-	c.mapGrid(x, y)
+	c.mapGrid(x, y, sampled)
 	if sampled {
 		c.printf(`<ellipse class="axis" cx="%s" cy="%s" rx="%s" ry="%s"/>`, short(x.place(0)), short(y.place(0)),
 			short(x.place(1)-x.place(0)), short(y.place(0)-y.place(1)))
@@ -121,7 +121,11 @@ func mapAxes(left, right, up float64) (x, y *axis) {
 	return x, y
 }
 
-func (c *canvas) mapGrid(x, y *axis) {
+func (c *canvas) mapGrid(x, y *axis, sampled bool) {
+	unit := "1/s"
+	if sampled {
+		unit = ""
+	}
 	for _, t := range x.ticks {
 		class := "grid"
 		if t.at == 0 {
@@ -138,8 +142,8 @@ func (c *canvas) mapGrid(x, y *axis) {
 		c.line(class, x.from, y.place(t.at), x.to, y.place(t.at))
 		c.text(x.from-7, y.place(t.at)+4, "end", "", t.label)
 	}
-	c.text((x.from+x.to)/2, y.from+footRoom-6, "middle", "", heading("real part", "", x.power))
-	c.text(x.from, y.to-9, "start", "", heading("imaginary part", "", y.power))
+	c.text((x.from+x.to)/2, y.from+footRoom-6, "middle", "", heading("real part", unit, x.power))
+	c.text(x.from, y.to-9, "start", "", heading("imaginary part", unit, y.power))
 }
 
 // forbidden shades where no pole may lie: outside the stable part, and outside what is required.

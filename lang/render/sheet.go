@@ -326,27 +326,3 @@ func listSheet(l *value.List, o Options) Sheet {
 	}
 	return s
 }
-
-// responseSheet says of each signal where it begins, ends and how far it goes.
-func responseSheet(r *value.Response, o Options) Sheet {
-	s := Sheet{Title: firstOf(oneLine(r.Title), "response"), Notes: r.Notes}
-	table := &value.Report{Columns: []string{"signal", "what", "first", "last", "smallest", "largest"}}
-	for _, t := range r.Signals {
-		if len(t.Values) == 0 {
-			continue
-		}
-		low, high := t.Values[0], t.Values[0]
-		for _, x := range t.Values {
-			low, high = min(low, x), max(high, x)
-		}
-		name := signalHead(value.Signal{Name: t.Name, Unit: t.Unit})
-		number := func(x float64) value.Value { return value.Float(x) }
-		table.Rows = append(table.Rows, []value.Value{value.Text(name), value.Text(t.Role),
-			number(t.Values[0]), number(t.Values[len(t.Values)-1]), number(low), number(high)})
-	}
-	if len(table.Rows) > 0 {
-		s.Sign = "≈"
-		s.Table = reportTable(table, o)
-	}
-	return s
-}

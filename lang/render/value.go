@@ -59,6 +59,8 @@ func layValue(v value.Value, in *value.Unit, o Options) laid {
 		return layModel(x, o)
 	case *value.Function:
 		return layFunction(x)
+	case *value.Response:
+		return layResponse(x, o)
 	case value.HasFields:
 		return layFields(x, o)
 	}
