@@ -2,13 +2,11 @@ package main
 
 import (
 	"bufio"
-	"context"
 	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
 	"os"
-	"os/signal"
 	"strings"
 
 	"gainwright/lang/diag"
@@ -26,10 +24,7 @@ func (a *app) checkAgainst(name, keptName string) error {
 	if failure != nil {
 		return failure
 	}
-	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt)
-	defer stop()
-	context.AfterFunc(ctx, stop)
-	doc, status, err := a.documentOf(ctx, d)
+	doc, status, err := a.document(d)
 	if err != nil {
 		return err
 	}

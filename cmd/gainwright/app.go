@@ -90,7 +90,7 @@ or an interruption, 64 wrong usage.`,
 	root.SetFlagErrorFunc(func(_ *cobra.Command, err error) error { return usageError{message: err.Error()} })
 	root.CompletionOptions.HiddenDefaultCmd = false
 	a.runFlags(root)
-	root.AddCommand(a.checkCommand(), a.tidyCommand(), a.explainCommand(), a.reportCommand(), a.versionCommand())
+	root.AddCommand(a.checkCommand(), a.tidyCommand(), a.explainCommand(), a.reportCommand(), a.followCommand(), a.versionCommand())
 	return root
 }
 

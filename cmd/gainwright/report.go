@@ -90,36 +90,52 @@ func sameFile(a, b string) bool {
 	return err == nil && os.SameFile(one, two)
 }
 
-// document runs a design to its end, or until Ctrl-C.
+// document runs a design to its end, or until Ctrl-C, and shows its error.
 func (a *app) document(d *design) (*report.Document, int, error) {
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt)
 	defer stop()
 	context.AfterFunc(ctx, stop)
-	return a.documentOf(ctx, d)
-}
-
-func (a *app) documentOf(ctx context.Context, d *design) (*report.Document, int, error) {
-	root, err := os.OpenRoot(d.folder)
-	if err != nil {
-		return nil, 0, unreadable(d.folder, err)
-	}
-	defer root.Close()
-	progress := newProgress(a.errOut)
-	var events []eval.Event
-	outcome := a.session(root, progress, false).RunText(ctx, d.source, func(e eval.Event) { events = append(events, e) })
-	progress.clear()
+	doc, events, status, err := a.documentOf(ctx, d)
 	for _, e := range events {
 		if e.Error != nil {
 			p := render.Printer{Out: a.errOut, Options: a.look(a.errOut)}
 			p.Event(e)
 		}
 	}
-	run := report.Run{Source: d.source, Events: events, Options: render.Options{Digits: a.digits}, Version: versionText(), Folder: root.FS()}
-	doc := report.New(run)
-	if err := doc.Prepare(); err != nil { // while the folder is open
-		return nil, 0, err
+	if err == nil {
+		err = doc.Prepare()
 	}
-	return doc, statusOf(outcome), nil
+	return doc, status, err
+}
+
+// documentOf runs a design; pictures of a notebook are read below its folder.
+func (a *app) documentOf(ctx context.Context, d *design) (*report.Document, []eval.Event, int, error) {
+	root, err := os.OpenRoot(d.folder)
+	if err != nil {
+		return nil, nil, 0, unreadable(d.folder, err)
+	}
+	defer root.Close()
+	progress := newProgress(a.errOut)
+	var events []eval.Event
+	outcome := a.session(root, progress, false).RunText(ctx, d.source, func(e eval.Event) { events = append(events, e) })
+	progress.clear()
+	doc := report.New(report.Run{Source: d.source, Events: events, Options: render.Options{Digits: a.digits},
+		Version: versionText(), Folder: below(d.folder)})
+	return doc, events, statusOf(outcome), nil
+}
+
+// below is a folder that is opened anew for each file, so that nothing stays open; links
+// out of it are refused.
+type below string
+
+// Open opens a file below the folder.
+func (b below) Open(name string) (fs.File, error) {
+	root, err := os.OpenRoot(string(b))
+	if err != nil {
+		return nil, err
+	}
+	defer root.Close()
+	return root.Open(name)
 }
 
 func writeDocument(doc *report.Document, output string, markdown bool) error {

@@ -44,12 +44,15 @@ func stateOf(word string) string {
 	return "bad"
 }
 
+//go:embed live.js
+var liveScript string
+
 // Live makes the page one that a server renews: its policy comes from the server's own
-// header, and Script, allowed there by Nonce, renews it.
+// header, and its script, allowed there by Nonce, asks for later versions.
 type Live struct {
-	Nonce  string
-	Script string
-	Stale  string // why the results are those of an earlier text; empty when they are not
+	Nonce   string
+	Version int
+	Problem string // why the file cannot be read at present; empty when it can
 }
 
 type pageData struct {
@@ -96,7 +99,7 @@ func (d *Document) page(w io.Writer, live *Live) error {
 	data := pageData{Document: d, Style: template.CSS(style), Policy: Policy(style), Body: template.HTML(body),
 		Cautions: template.HTML(cautions), Live: live, Loose: d.loose, Command: d.command()}
 	if live != nil {
-		data.Script = template.JS(live.Script)
+		data.Script = template.JS(liveScript)
 	} else {
 		// The data may hold any text; its encoder writes < and > as escapes.
 		data.Data = template.HTML(`<script type="application/json" id="results">` + string(d.Data()) + `</script>`)

@@ -12,11 +12,14 @@
 package report
 
 import (
+	"bytes"
 	"crypto/sha256"
 	"encoding/hex"
+	"errors"
 	"io/fs"
 	"path"
 	"path/filepath"
+	"sort"
 	"strings"
 
 	"gainwright/lang/diag"
@@ -60,6 +63,7 @@ type Result struct {
 	Note    string
 	File    string // the file it comes from, where that is another one
 	Line    int
+	IsOld   bool // of an earlier run, because this one stopped before
 }
 
 // New puts a run in order.
@@ -95,24 +99,53 @@ func (d *Document) readFrontMatter() {
 	}
 }
 
-// parse reads the statements again for their places; what stands behind an error of the
-// text is not among them.
+// mostBlanked bounds how many lines that cannot be read are skipped to read on behind them.
+const mostBlanked = 20
+
+// parse reads the statements again for their places. A line that cannot be read counts as
+// a statement, and the reading goes on behind it, so that what stands there keeps its place.
 func (d *Document) parse() {
 	read := syntax.Parse
 	if d.isNotebook() {
 		read = syntax.ParseNotebook
 	}
-	file, _ := read(d.run.Source)
-	if file == nil {
-		file = &syntax.File{Source: d.run.Source}
-	}
-	for _, e := range d.run.Events {
-		if e.Error != nil && (e.Error.Source == nil || e.Error.Source == d.run.Source) && statementAt(file, place(e)) < 0 && e.Error.Source != nil {
-			file.Statements = append(file.Statements, unread{d.wholeLine(e.Error.Span.Start)})
+	text := []byte(d.run.Source.Text)
+	var skipped []syntax.Statement
+	d.file = &syntax.File{Source: d.run.Source}
+	for range mostBlanked + 1 {
+		file, err := read(diag.NewSource(d.run.Source.Name, string(text)))
+		if file != nil && len(file.Statements) >= len(d.file.Statements) {
+			d.file = file
+		}
+		var failure *diag.Error
+		if !errors.As(err, &failure) {
+			break
+		}
+		line := d.wholeLine(failure.Span.Start)
+		if len(skipped) == 0 {
+			skipped = append(skipped, unread{line})
+		}
+		if !blankLine(text, line) {
+			break
 		}
 	}
-	d.file = file
-	d.results = make([][]Result, len(file.Statements))
+	d.file.Statements = append(d.file.Statements, skipped...)
+	sort.SliceStable(d.file.Statements, func(i, j int) bool {
+		return d.file.Statements[i].Extent().Start < d.file.Statements[j].Extent().Start
+	})
+	d.results = make([][]Result, len(d.file.Statements))
+}
+
+// blankLine turns a line into blanks and tells whether it held anything. A fence stays.
+func blankLine(text []byte, line diag.Span) bool {
+	body := bytes.TrimSpace(text[line.Start:line.End])
+	if len(body) == 0 || bytes.HasPrefix(body, []byte("```")) || bytes.HasPrefix(body, []byte("~~~")) {
+		return false
+	}
+	for i := line.Start; i < line.End; i++ {
+		text[i] = ' '
+	}
+	return true
 }
 
 // unread is the line of an error in the text itself, where there is no statement.
@@ -218,4 +251,36 @@ func (d *Document) result(e eval.Event) (Result, bool) {
 		return r, false
 	}
 	return r, true
+}
+
+// Recall shows, behind an error, what an earlier run said there: each statement that was
+// not run gets the results of the earlier statement that reads the same.
+func (d *Document) Recall(earlier *Document) {
+	if earlier == nil || d.reached >= len(d.run.Source.Text) {
+		return
+	}
+	words := func(doc *Document, i int) string {
+		span := doc.file.Statements[i].Extent()
+		return doc.run.Source.Text[span.Start:min(span.End, len(doc.run.Source.Text))]
+	}
+	before := map[string][][]Result{}
+	for i := range earlier.file.Statements {
+		before[words(earlier, i)] = append(before[words(earlier, i)], earlier.results[i])
+	}
+	for i, s := range d.file.Statements {
+		text := words(d, i)
+		old := before[text]
+		if len(old) == 0 {
+			continue
+		}
+		before[text] = old[1:]
+		if s.Extent().Start < d.reached || len(d.results[i]) > 0 {
+			continue
+		}
+		for _, r := range old[0] {
+			r.IsOld = true
+			d.results[i] = append(d.results[i], r)
+		}
+	}
+	d.prepared = nil
 }
