@@ -71,9 +71,9 @@ func margins(c *value.Call) (value.Value, error) {
 	for _, r := range poles {
 		stable = stable && decays(r, p.Every != nil)
 	}
-	r := &value.Report{Holds: &stable, Title: "margins: the closed loop is stable"}
+	r := &value.Report{Holds: &stable, Title: "the closed loop is stable"}
 	if !stable {
-		r.Title = "margins: the closed loop is NOT stable"
+		r.Title = "the closed loop is NOT stable"
 		r.Notes = append(r.Notes, "the crossings of an unstable loop are no margins: they tell which change would have to happen first")
 	}
 	all := &marginSet{degrees: math.Inf(1), delay: math.Inf(1)}

@@ -212,7 +212,7 @@ func routhTable(c *value.Call) (value.Value, error) {
 	}
 	holds := t.Stable()
 	r := &value.Report{Holds: &holds, Columns: []string{"row", "entries", "remark"}}
-	r.Title = "Routh table: " + verdict(holds, "all roots in the left half plane", fmt.Sprintf("%d in the right half plane, %d on the axis", t.Right, t.Axis))
+	r.Title = verdict(holds, "all roots in the left half plane", fmt.Sprintf("%d in the right half plane, %d on the axis", t.Right, t.Axis))
 	rows := &value.List{}
 	for _, row := range t.Rows {
 		entries := numbers(row.Entries)
@@ -262,7 +262,7 @@ func juryTable(c *value.Call) (value.Value, error) {
 	}
 	holds := t.Stable()
 	r := &value.Report{Holds: &holds, Columns: []string{"row", "entries"}}
-	r.Title = "Jury table: " + verdict(holds, "all roots inside the unit circle", fmt.Sprintf("%d outside the unit circle, %d on it", t.Outside, t.On))
+	r.Title = verdict(holds, "all roots inside the unit circle", fmt.Sprintf("%d outside the unit circle, %d on it", t.Outside, t.On))
 	rows := &value.List{}
 	for i, row := range t.Rows {
 		entries := numbers(row.Entries)

@@ -500,6 +500,13 @@ func (m *mode) access() string {
 	return moved + ", " + seen
 }
 
+// strengthText writes a strength to two digits, 7.9e-5 rather than 7.9e-05.
+func strengthText(x float64) string {
+	text := fmt.Sprintf("%.2g", x)
+	text = strings.Replace(text, "e-0", "e-", 1)
+	return strings.Replace(strings.Replace(text, "e+0", "e", 1), "e+", "e", 1)
+}
+
 func marks(list []mark) string {
 	if len(list) == 0 {
 		return "nothing"
@@ -508,7 +515,7 @@ func marks(list []mark) string {
 	for _, k := range list {
 		w := k.name
 		if k.strength >= 0 {
-			w += fmt.Sprintf(" %.2g", k.strength)
+			w += " " + strengthText(k.strength)
 		}
 		if k.part {
 			w += " (in part)"

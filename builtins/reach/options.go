@@ -205,11 +205,9 @@ func (p *pair) option(c *value.Call, set int, dual bool) (*option, error) {
 		}
 		if imag(v) >= 0 && total < weakest && !isMissing(d.missing, v) {
 			weakest = total
-			o.weakest = fmt.Sprintf("%.4g: %.2g", v, total)
+			o.weakest = fmt.Sprintf("%.4g ± %.4gi: %s", real(v), imag(v), strengthText(total))
 			if imag(v) == 0 {
-				o.weakest = fmt.Sprintf("%.4g: %.2g", real(v), total)
-			} else {
-				o.weakest = fmt.Sprintf("%.4g ± %.4gi: %.2g", real(v), imag(v), total)
+				o.weakest = fmt.Sprintf("%.4g: %s", real(v), strengthText(total))
 			}
 		}
 	}

@@ -182,9 +182,9 @@ func cancellations(c *value.Call) (value.Value, error) {
 		}
 	}
 	n, _ := system.PlantSize(p)
-	r.Title = fmt.Sprintf("cancellations: %d of %d poles are lost", len(lost), n)
+	r.Title = fmt.Sprintf("%d of %d poles are lost", len(lost), n)
 	if len(lost) == 0 {
-		r.Title = "cancellations: none"
+		r.Title = "no pole is lost"
 		r.Columns = nil
 	}
 	if lasting > 0 {

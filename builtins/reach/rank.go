@@ -224,14 +224,12 @@ func rankReport(c *value.Call, dual bool) (value.Value, error) {
 	holds := d.rank == n
 	r := &value.Report{Holds: &holds}
 	verb := "moved by the inputs"
-	r.Title = "reachability"
 	if dual {
-		r.Title, verb = "observability", "seen by the outputs"
+		verb = "seen by the outputs"
 	}
+	r.Title = fmt.Sprintf("%d of %d modes are %s", d.rank, n, verb)
 	if holds {
-		r.Title += fmt.Sprintf(": all %d modes are %s", n, verb)
-	} else {
-		r.Title += fmt.Sprintf(": %d of %d modes are %s", d.rank, n, verb)
+		r.Title = fmt.Sprintf("all %d modes are %s", n, verb)
 	}
 	indices := &value.List{}
 	for _, k := range d.indices {
@@ -443,14 +441,13 @@ func lasting(c *value.Call, dual bool) (value.Value, error) {
 		}
 	}
 	holds := len(offending) == 0
-	title, verb := "stabilizable", "moved"
+	verb := "moved"
 	if dual {
-		title, verb = "detectable", "seen"
+		verb = "seen"
 	}
-	if holds {
-		title += ": every mode that does not decay is " + verb
-	} else {
-		title = "not " + title + ": a mode that does not decay is not " + verb
+	title := "every mode that does not decay is " + verb
+	if !holds {
+		title = "a mode that does not decay is not " + verb
 	}
 	return &value.Report{Title: title, Holds: &holds, Fields: []value.Named{
 		{Name: "holds", Value: value.Boolean(holds)},
