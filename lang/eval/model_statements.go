@@ -29,8 +29,24 @@ func (r *run) runModel(t *task, src *diag.Source, st *syntax.Model) *diag.Error 
 	return nil
 }
 
-func (r *run) runDiagram(_ *task, _ *diag.Source, st *syntax.Diagram) *diag.Error {
-	return notBuilt("diagram", st.Span)
+// runDiagram wires systems into a plant and binds it.
+func (r *run) runDiagram(t *task, src *diag.Source, st *syntax.Diagram) *diag.Error {
+	note, err := r.session.mayBind(src, st.Name)
+	if err != nil {
+		return err
+	}
+	p, err := model.BuildDiagram(src, st, &surroundings{session: r.session, task: t})
+	if err != nil {
+		return err
+	}
+	r.bound(src, st.Span, st.Name, p, "", oneLine(sliceOf(src, st.Span)))
+	if note != "" {
+		r.remark(src, st.Name.Span, note)
+	}
+	for _, n := range p.Notes {
+		r.remark(src, st.Name.Span, st.Name.Name+": "+n)
+	}
+	return nil
 }
 
 func (r *run) runStudy(_ *task, _ *diag.Source, st *syntax.Study) *diag.Error {

@@ -40,6 +40,8 @@ func (c *constants) Evaluate(source *diag.Source, e syntax.Expr, library bool) (
 		}
 		u, err := value.Resolve(e.Unit.Text, factors)
 		return wrap(value.Quantity{Magnitude: value.Rat(e.Value), Unit: u}, err)
+	case *syntax.Text:
+		return value.Text(e.Value), nil
 	case *syntax.Name:
 		if v, ok := c.names[e.Name]; ok {
 			return v, nil
