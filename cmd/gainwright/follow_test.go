@@ -245,7 +245,7 @@ func TestAThousandRunsLeaveNothingBehind(t *testing.T) {
 			t.Fatal(failure)
 		}
 		f.run(t.Context(), d)
-		if a := live.page(); a.status != 200 {
+		if a := live.page(false); a.status != 200 {
 			t.Fatal(a.status)
 		}
 	}

@@ -116,7 +116,7 @@ func (l *livePage) respond(r *request) answer {
 		!l.knows(query.Get("token")):
 		return refuse(403)
 	case r.url.Path == "/":
-		return l.page()
+		return l.page(false)
 	case r.url.Path == "/next":
 		return l.next(r.gone, query.Get("after"))
 	}
@@ -155,13 +155,13 @@ func (l *livePage) next(gone context.Context, after string) answer {
 		l.mutex.Unlock()
 	}()
 	if version != shown {
-		return l.page()
+		return l.page(true)
 	}
 	timer := time.NewTimer(longestWait)
 	defer timer.Stop()
 	select {
 	case <-changed:
-		return l.page()
+		return l.page(true)
 	case <-timer.C:
 	case <-gone.Done():
 	}
@@ -169,8 +169,8 @@ func (l *livePage) next(gone context.Context, after string) answer {
 }
 
 // page is the report with a policy of its own: the one script and the one style sheet are
-// known by a word that no text can guess.
-func (l *livePage) page() answer {
+// known by a word that no text can guess. One that renews a page comes without them.
+func (l *livePage) page(renews bool) answer {
 	l.mutex.Lock()
 	doc, problem, version := l.document, l.problem, l.version
 	l.mutex.Unlock()
@@ -181,7 +181,7 @@ func (l *livePage) page() answer {
 	var b bytes.Buffer
 	if doc == nil {
 		fmt.Fprintf(&b, "<!DOCTYPE html><title>no report</title><p>%s</p>", html.EscapeString(problem))
-	} else if err := doc.LiveHTML(&b, report.Live{Nonce: nonce, Version: version, Problem: problem}); err != nil {
+	} else if err := doc.LiveHTML(&b, report.Live{Nonce: nonce, Version: version, Renews: renews, Problem: problem}); err != nil {
 		return refuse(500)
 	}
 	policy := "default-src 'none'; img-src data:; style-src 'nonce-" + nonce + "'; script-src 'nonce-" + nonce +

@@ -71,7 +71,7 @@ func TestReadmeStatementsRun(t *testing.T) {
 }
 
 // scriptStatus tells which designs end with another exit status than 0.
-var scriptStatus = map[string]int{"colleague_sheet.gain": 1}
+var scriptStatus = map[string]int{"colleague_sheet.gain": 1, "review_wire_feed.md": 1}
 
 func TestDesignsRun(t *testing.T) {
 	t.Chdir(filepath.Join("..", "..", "scripts"))

@@ -75,13 +75,13 @@ func drawPoleMap(r *value.Report, id string) (string, bool) {
 		return "", false
 	}
 	_, sampled := fieldNumber(r, "every")
-	left, right, up := math.Inf(1), math.Inf(-1), 0.0
-	for _, s := range all {
-		left, right, up = math.Min(left, s.re), math.Max(right, s.re), math.Max(up, math.Abs(s.im))
-	}
-	left, right = math.Min(left, 0), math.Max(right, 0)
+	drawn, far := reach(all, sampled)
+	left, right, up := 0.0, 0.0, 0.0
 	if sampled {
-		left, right, up = math.Min(left, -1), math.Max(right, 1), math.Max(up, 1)
+		left, right, up = -1, 1, 1
+	}
+	for _, s := range drawn {
+		left, right, up = math.Min(left, s.re), math.Max(right, s.re), math.Max(up, math.Abs(s.im))
 	}
 	x, y := mapAxes(left, right, up)
 	var c canvas
@@ -96,12 +96,39 @@ func drawPoleMap(r *value.Report, id string) (string, bool) {
 		c.printf(`<ellipse class="axis" cx="%s" cy="%s" rx="%s" ry="%s"/>`, short(x.place(0)), short(y.place(0)),
 			short(x.place(1)-x.place(0)), short(y.place(0)-y.place(1)))
 	}
-	for _, s := range all {
+	for _, s := range drawn {
 		c.spot(s.what, x.place(s.re), y.place(s.im))
 	}
-	c.mapKey(all, x)
+	c.mapKey(drawn, x)
+	if len(far) > 0 {
+		c.text(x.from+6, y.from-8, "start", "quiet", shortened("not drawn, farther away: "+placesText(far), x.to-x.from-12))
+	}
 	c.WriteString("</svg>")
 	return c.String(), true
+}
+
+// farZero is how many times farther than any pole a zero may lie to be drawn.
+const farZero = 3
+
+// reach parts what is drawn from zeros so far away that the poles would shrink to a point.
+func reach(all []spot, sampled bool) (drawn, far []spot) {
+	size := 0.0
+	if sampled {
+		size = 1
+	}
+	for _, s := range all {
+		if s.what != "zero" {
+			size = math.Max(size, math.Hypot(s.re, s.im))
+		}
+	}
+	for _, s := range all {
+		if s.what == "zero" && size > 0 && math.Hypot(s.re, s.im) > farZero*size {
+			far = append(far, s)
+		} else {
+			drawn = append(drawn, s)
+		}
+	}
+	return drawn, far
 }
 
 // mapAxes makes two axes of equal scale around the places.
@@ -198,9 +225,20 @@ func (c *canvas) mapKey(all []spot, x *axis) {
 }
 
 func describeMap(all []spot, sampled bool) string {
+	plane := "the complex plane"
+	if sampled {
+		plane = "the plane of z with the unit circle"
+	}
+	return "Places in " + plane + ": " + placesText(all) + "."
+}
+
+// most places that are told in words
+const mostPlaces = 40
+
+func placesText(all []spot) string {
 	parts := make([]string, 0, len(all))
 	for i, s := range all {
-		if i == 40 {
+		if i == mostPlaces {
 			parts = append(parts, fmt.Sprintf("and %d more", len(all)-i))
 			break
 		}
@@ -210,9 +248,5 @@ func describeMap(all []spot, sampled bool) string {
 		}
 		parts = append(parts, s.what+" at "+place)
 	}
-	plane := "the complex plane"
-	if sampled {
-		plane = "the plane of z with the unit circle"
-	}
-	return "Places in " + plane + ": " + strings.Join(parts, "; ") + "."
+	return strings.Join(parts, "; ")
 }

@@ -19,7 +19,8 @@ func layReport(r *value.Report, o Options) laid {
 		if len(l.lines) > 0 {
 			l.lines = append(l.lines, "")
 		}
-		t := newTable(r, o)
+		short, leftOut := abridgedTable(r, o)
+		t := newTable(short, o)
 		l.sign = t.sign
 		if r.Holds != nil {
 			// The truth after the sign is exact, whatever the table beside it is.
@@ -28,8 +29,25 @@ func layReport(r *value.Report, o Options) laid {
 			}
 		}
 		l.lines = append(l.lines, t.lines(o.width()-2)...)
+		if leftOut != "" {
+			l.notes = append(append([]string{}, l.notes...), leftOut)
+		}
 	}
 	return l
+}
+
+// longest table that is shown whole
+const mostTableRows = 60
+
+// abridgedTable leaves out rows of a long table and says which.
+func abridgedTable(r *value.Report, o Options) (short *value.Report, leftOut string) {
+	n := len(r.Rows)
+	if n <= mostTableRows || o.InFull {
+		return r, ""
+	}
+	cut := *r
+	cut.Rows = append(append([][]value.Value{}, r.Rows[:firstShown]...), r.Rows[n-lastShown:]...)
+	return &cut, fmt.Sprintf("%d of %d rows, between the first and the last few, are left out", n-firstShown-lastShown, n)
 }
 
 // fieldLines shows the small fields and names the large ones.

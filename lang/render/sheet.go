@@ -234,7 +234,7 @@ func modelSheet(m *value.Model, o Options) Sheet {
 
 func reportSheet(r *value.Report, o Options) Sheet {
 	l := layReport(r, o)
-	s := Sheet{Sign: signText(l.sign), Word: l.word, Title: oneLine(l.title), Remark: l.remark(), Notes: l.notes}
+	s := Sheet{Sign: signText(l.sign), Word: l.word, Title: oneLine(l.title), Remark: l.remark(), Notes: r.Notes}
 	s.Fields, s.Further = fieldSheets(r.Fields, len(r.Columns) > 0, o)
 	if len(r.Columns) > 0 {
 		s.Table = reportTable(r, o)
@@ -242,17 +242,8 @@ func reportSheet(r *value.Report, o Options) Sheet {
 	return s
 }
 
-// longest table on a page; the rest is in the data beside it
-const mostTableRows = 60
-
 func reportTable(r *value.Report, o Options) *SheetTable {
-	leftOut := ""
-	if len(r.Rows) > mostTableRows {
-		leftOut = strconv.Itoa(len(r.Rows)-firstShown-lastShown) + " rows between the first and the last few are left out"
-		short := *r
-		short.Rows = append(append([][]value.Value{}, r.Rows[:firstShown]...), r.Rows[len(r.Rows)-lastShown:]...)
-		r = &short
-	}
+	r, leftOut := abridgedTable(r, o)
 	t := newTable(r, o)
 	out := &SheetTable{Heads: t.heads, Numeric: t.numeric, Paired: t.paired, LeftOut: leftOut}
 	for i := range r.Rows {

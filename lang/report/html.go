@@ -52,6 +52,7 @@ var liveScript string
 type Live struct {
 	Nonce   string
 	Version int
+	Renews  bool   // a page is renewed with this: without style sheet and script, which that page has
 	Problem string // why the file cannot be read at present; empty when it can
 }
 
@@ -59,6 +60,7 @@ type pageData struct {
 	*Document
 	Style    template.CSS
 	Policy   string
+	Bare     bool // without style sheet and script
 	Body     template.HTML
 	Cautions template.HTML
 	Data     template.HTML
@@ -99,7 +101,7 @@ func (d *Document) page(w io.Writer, live *Live) error {
 	data := pageData{Document: d, Style: template.CSS(style), Policy: Policy(style), Body: template.HTML(body),
 		Cautions: template.HTML(cautions), Live: live, Loose: d.loose, Command: d.command()}
 	if live != nil {
-		data.Script = template.JS(liveScript)
+		data.Script, data.Bare = template.JS(liveScript), live.Renews
 	} else {
 		// The data may hold any text; its encoder writes < and > as escapes.
 		data.Data = template.HTML(`<script type="application/json" id="results">` + string(d.Data()) + `</script>`)

@@ -14,20 +14,27 @@
     for (const r of rows(main)) seen.set(r.textContent, (seen.get(r.textContent) || 0) + 1);
     return seen;
   };
-  // The row at the top of the window stays where it is.
-  const anchor = main => {
-    for (const r of rows(main)) {
+  // What is read stays where it is: the first row in the window that is known in both
+  // texts by words that come once.
+  const anchor = (old, fresh) => {
+    const before = count(old), after = count(fresh);
+    let held = null;
+    for (const r of rows(old)) {
+      const text = r.textContent;
+      if (before.get(text) !== 1 || after.get(text) !== 1) continue;
       const box = r.getBoundingClientRect();
-      if (box.bottom > 0) return {text: r.textContent, top: box.top};
+      if (held && box.top > innerHeight) break;
+      held = {text, top: box.top};
+      if (box.bottom > 0) break;
     }
-    return null;
+    return held;
   };
   const show = text => {
     const next = new DOMParser().parseFromString(text, "text/html");
     const fresh = next.getElementById("report");
     const old = document.getElementById("report");
     if (!fresh || !old) return;
-    const before = count(old), held = anchor(old), y = scrollY;
+    const before = count(old), held = anchor(old, fresh), y = scrollY;
     const open = new Set([...old.querySelectorAll("details[open]")].map(d => d.closest(".row")?.id));
     const adopted = document.adoptNode(fresh);
     for (const r of rows(adopted)) {
