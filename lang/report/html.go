@@ -8,6 +8,7 @@ import (
 	"html/template"
 	"io"
 	"strings"
+	"sync"
 
 	"gainwright/lang/figure"
 	"gainwright/lang/render"
@@ -22,7 +23,12 @@ var styleText string
 //go:embed cautions.md
 var cautionsText string
 
-var pages = template.Must(template.New("page").Funcs(template.FuncMap{
+// pages are parsed when the first document is written, not when the program starts.
+var pages = sync.OnceValue(func() *template.Template {
+	return template.Must(template.New("page").Funcs(templateFunctions).Parse(pageText))
+})
+
+var templateFunctions = template.FuncMap{
 	"trim":    strings.TrimSpace,
 	"numeric": func(t *render.SheetTable, j int) bool { return j < len(t.Numeric) && t.Numeric[j] },
 	"paired":  func(t *render.SheetTable, j int) bool { return j < len(t.Paired) && t.Paired[j] },
@@ -31,7 +37,7 @@ var pages = template.Must(template.New("page").Funcs(template.FuncMap{
 	"math":    func(s string) template.HTML { return template.HTML(s) }, // built from escaped texts by render
 	"drawing": func(s string) template.HTML { return template.HTML(s) }, // built from escaped texts by figure
 	"state":   stateOf,
-}).Parse(pageText))
+}
 
 // stateOf is the class of a verdict's word.
 func stateOf(word string) string {
@@ -107,7 +113,7 @@ func (d *Document) page(w io.Writer, live *Live) error {
 		data.Data = template.HTML(`<script type="application/json" id="results">` + string(d.Data()) + `</script>`)
 	}
 	var b bytes.Buffer
-	if err := pages.ExecuteTemplate(&b, "page", data); err != nil {
+	if err := pages().ExecuteTemplate(&b, "page", data); err != nil {
 		return err
 	}
 	_, err = w.Write(b.Bytes())
@@ -133,7 +139,7 @@ func (d *Document) body() ([]byte, error) {
 func writeRows(w io.Writer, rows []row) error {
 	var b bytes.Buffer
 	for _, r := range rows {
-		if err := pages.ExecuteTemplate(&b, "row", r); err != nil {
+		if err := pages().ExecuteTemplate(&b, "row", r); err != nil {
 			return err
 		}
 	}
