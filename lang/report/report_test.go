@@ -13,6 +13,7 @@ import (
 	"strings"
 	"testing"
 	"testing/fstest"
+	"unicode/utf8"
 
 	"gainwright/lang/diag"
 	"gainwright/lang/eval"
@@ -189,3 +190,39 @@ func TestCautionsAreTheReadmes(t *testing.T) {
 }
 
 func source(text string) *diag.Source { return diag.NewSource("x.gain", text) }
+
+// FuzzDocument looks for a text that cannot be set, or that brings elements of its own.
+func FuzzDocument(f *testing.F) {
+	f.Add(hostile, true)
+	f.Add("# a\n\nx = [1,\n2] # b\nx\n1 + ) 2\nrequire x[1] == 2\n", false)
+	f.Add("> - ```gain\n>   1\n>   2 +\n>   ```\n", true)
+	f.Fuzz(func(t *testing.T, text string, isNotebook bool) {
+		if len(text) > 4000 || !utf8.ValidString(text) || strings.ContainsRune(text, 0) {
+			return // refused before
+		}
+		name := "x.gain"
+		if isNotebook {
+			name = "x.md"
+		}
+		d := run(t, name, text)
+		d.Recall(run(t, name, "1\n```gain\n2\n```\n"))
+		var b bytes.Buffer
+		if err := d.HTML(&b); err != nil {
+			t.Fatal(err)
+		}
+		for _, bad := range []string{"<script>", "<iframe", "<object", " onerror=\"", "javascript:alert(1)\""} {
+			if strings.Contains(strings.ToLower(b.String()), bad) {
+				t.Errorf("the page of %q holds %s", text, bad)
+			}
+		}
+		if n := strings.Count(b.String(), "</script>"); n != 1 {
+			t.Errorf("the page of %q holds %d ends of scripts", text, n)
+		}
+		if k, err := report.ReadKept(b.Bytes()); err != nil {
+			t.Errorf("the page of %q cannot be read back: %v", text, err)
+		} else if found, err := d.Compare(k); err != nil || len(found) > 0 {
+			t.Errorf("%q differs from itself: %v %v", text, found, err)
+		}
+		d.Markdown("out")
+	})
+}
