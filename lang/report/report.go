@@ -102,8 +102,9 @@ func (d *Document) readFrontMatter() {
 // mostBlanked bounds how many lines that cannot be read are skipped to read on behind them.
 const mostBlanked = 20
 
-// parse reads the statements again for their places. A line that cannot be read counts as
-// a statement, and the reading goes on behind it, so that what stands there keeps its place.
+// parse reads the statements again for their places. The line at which a statement begins
+// that cannot be read counts as a statement, and the reading goes on behind it, so that
+// what stands there keeps its place.
 func (d *Document) parse() {
 	read := syntax.Parse
 	if d.isNotebook() {
@@ -121,7 +122,7 @@ func (d *Document) parse() {
 		if !errors.As(err, &failure) {
 			break
 		}
-		line := d.wholeLine(failure.Span.Start)
+		line := d.brokenLine(file, text, failure.Span.Start)
 		if len(skipped) == 0 {
 			skipped = append(skipped, unread{line})
 		}
@@ -134,6 +135,30 @@ func (d *Document) parse() {
 		return d.file.Statements[i].Extent().Start < d.file.Statements[j].Extent().Start
 	})
 	d.results = make([][]Result, len(d.file.Statements))
+}
+
+// brokenLine is the first line of code behind the last statement that could be read, which
+// may lie before the error: a bracket left open is missed only further down.
+func (d *Document) brokenLine(file *syntax.File, text []byte, failed int) diag.Span {
+	from := 0
+	if file != nil {
+		if n := len(file.Blocks); n > 0 {
+			from = file.Blocks[n-1].Span.Start
+		}
+		if n := len(file.Statements); n > 0 {
+			from = max(from, file.Statements[n-1].Extent().End)
+		}
+	}
+	for at := from; at < min(failed, len(text)); {
+		line := diag.Span{Start: at, End: lineEnd(string(text), at, len(text))}
+		code, _, _ := strings.Cut(string(text[line.Start:line.End]), "#")
+		if strings.TrimLeft(code, " \t\r\n>") != "" {
+			line.End = line.Start + len(strings.TrimRight(string(text[line.Start:line.End]), "\r\n"))
+			return line
+		}
+		at = line.End
+	}
+	return d.wholeLine(failed)
 }
 
 // blankLine turns a line into blanks and tells whether it held anything. A fence stays.
@@ -171,7 +196,7 @@ func (d *Document) distribute() {
 	for _, e := range d.run.Events {
 		at := -1
 		if e.Source == d.run.Source || e.Source == nil {
-			at = statementAt(d.file, place(e))
+			at = d.statementOf(e)
 		} else {
 			at = d.nextUse(last)
 		}
@@ -196,6 +221,19 @@ func (d *Document) distribute() {
 	}
 }
 
+// statementOf finds the statement of an event of the file itself. An error of the text
+// belongs to the line that could not be read, wherever it was noticed.
+func (d *Document) statementOf(e eval.Event) int {
+	if e.Error != nil && e.Error.Kind == diag.Syntax {
+		for i, s := range d.file.Statements {
+			if _, ok := s.(unread); ok {
+				return i
+			}
+		}
+	}
+	return statementAt(d.file, place(e))
+}
+
 func place(e eval.Event) diag.Span {
 	if e.Error != nil && e.Span.IsZero() {
 		return e.Error.Span
@@ -204,17 +242,12 @@ func place(e eval.Event) diag.Span {
 }
 
 func statementAt(file *syntax.File, span diag.Span) int {
-	atEnd := -1
 	for i, s := range file.Statements {
-		x := s.Extent()
-		if span.Start >= x.Start && span.Start < max(x.End, x.Start+1) {
+		if x := s.Extent(); span.Start >= x.Start && span.Start < max(x.End, x.Start+1) {
 			return i
 		}
-		if _, ok := s.(unread); ok && span.Start == x.End {
-			atEnd = i // what is missing is missed behind the line's last character
-		}
 	}
-	return atEnd
+	return -1
 }
 
 func (d *Document) nextUse(after int) int {
