@@ -88,18 +88,35 @@ func (x *terminal) send(text string) {
 // expect waits for a text after what was looked at before.
 func (x *terminal) expect(text string) {
 	x.t.Helper()
-	deadline := time.Now().Add(patience)
-	for {
-		all := x.seen()
-		if i := strings.Index(all[x.read:], text); i >= 0 {
+	if !x.appears(text, patience) {
+		x.t.Fatalf("%q did not come; after what was seen before stands\n%q", text, x.seen()[x.read:])
+	}
+}
+
+// appears waits for a text after what was looked at before.
+func (x *terminal) appears(text string, within time.Duration) bool {
+	for deadline := time.Now().Add(within); ; time.Sleep(2 * time.Millisecond) {
+		if i := strings.Index(x.seen()[x.read:], text); i >= 0 {
 			x.read += i + len(text)
-			return
+			return true
 		}
 		if time.Now().After(deadline) {
-			x.t.Fatalf("%q did not come; after what was seen before stands\n%q", text, all[x.read:])
+			return false
 		}
-		time.Sleep(2 * time.Millisecond)
 	}
+}
+
+// cancel presses Ctrl-C until the prompt is back: a key pressed while the terminal changes
+// from one mode to the other is lost, as it is for a hand on the keyboard.
+func (x *terminal) cancel() {
+	x.t.Helper()
+	for range 10 {
+		x.send("\x03")
+		if x.appears("» ", patience/10) {
+			return
+		}
+	}
+	x.t.Fatalf("the prompt did not come back; after what was seen before stands\n%q", x.seen()[x.read:])
 }
 
 // leave ends the session and gives its exit status.
@@ -160,12 +177,10 @@ func TestControlCCancelsTheInputOnly(t *testing.T) {
 	x.expect("» ")
 	x.send("half typed [")
 	x.expect("half typed [")
-	x.send("\x03")
-	x.expect("» ")
+	x.cancel()
 	x.send("C = [[1,\r")
 	x.expect("… ")
-	x.send("\x03")
-	x.expect("» ")
+	x.cancel()
 	x.send("kept + 1\r")
 	x.expect("kept + 1 = 8")
 	x.leave()
