@@ -120,6 +120,21 @@ func TestResponseIsDrawn(t *testing.T) {
 	}
 }
 
+// TestSampledSignalsAreHeld follows a staircase: every step goes along or up, never both.
+func TestSampledSignalsAreHeld(t *testing.T) {
+	r := &value.Response{Sampled: true, Instants: []float64{0, 1, 2, 3}, Signals: []value.Trace{{Name: "x", Role: "output", Values: []float64{0, 1, 3, 2}}}}
+	path := curvePath.FindStringSubmatch(draw(t, r))[1]
+	numbers := regexp.MustCompile(`-?[0-9.]+`).FindAllString(path, -1)
+	if len(numbers) != 2+2*6 {
+		t.Fatalf("the path is %s", path)
+	}
+	for i := 2; i < len(numbers); i += 2 {
+		if (numbers[i] == "0") == (numbers[i+1] == "0") {
+			t.Errorf("a step of the path %s goes by %s and %s", path, numbers[i], numbers[i+1])
+		}
+	}
+}
+
 func TestManySamplesStaySmallAndKeepTheExtremes(t *testing.T) {
 	r := swing(10_000, "x")
 	r.Signals[0].Values[7003] = 9

@@ -267,17 +267,19 @@ func trace(one curve, x, y *axis) string {
 		penX, penY = px, py
 	}
 	column := newColumn(put)
+	started := false // the curve has a point since its last gap
 	for i, t := range one.x {
 		v := one.y[i]
 		if math.IsNaN(v) || math.IsInf(v, 0) || math.IsNaN(t) || x.isLog && t <= 0 {
 			column.flush()
-			down = false
+			down, started = false, false
 			continue
 		}
 		px, py := tenth(x.place(t)), tenth(y.place(v))
-		if one.staircase && down {
+		if one.staircase && started {
 			column.add(px, column.last)
 		}
+		started = true
 		column.add(px, py)
 	}
 	column.flush()

@@ -56,7 +56,8 @@ func signalLines(r *value.Response, s value.Trace, width int) []string {
 	if low > high {
 		return nil
 	}
-	if high == low {
+	steady, level := high == low, high
+	if steady {
 		low, high = low-1, high+1
 	}
 	cells := width - labelCells - 1
@@ -79,10 +80,13 @@ func signalLines(r *value.Response, s value.Trace, width int) []string {
 	lines := []string{strings.Repeat(" ", labelCells+1) + heading(symbol(s.Name), s.Unit.Text, 0)}
 	for k, row := range dots.rows() {
 		label := ""
-		switch k {
-		case 0:
+		switch {
+		case steady && k == terminalLines/2:
+			label = brief3(level)
+		case steady:
+		case k == 0:
 			label = brief3(high)
-		case terminalLines - 1:
+		case k == terminalLines-1:
 			label = brief3(low)
 		}
 		lines = append(lines, strings.TrimRight(padded(label)+" "+row, " ⠀"))
