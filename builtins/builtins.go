@@ -9,6 +9,7 @@ import (
 	"gainwright/builtins/matrix"
 	"gainwright/builtins/polynomial"
 	"gainwright/builtins/reach"
+	"gainwright/builtins/response"
 	"gainwright/builtins/sampling"
 	"gainwright/builtins/system"
 	"gainwright/lang/value"
@@ -18,7 +19,7 @@ import (
 func Table() []*value.Builtin {
 	var all []*value.Builtin
 	for _, family := range [](func() []*value.Builtin){
-		matrix.Builtins, polynomial.Builtins, system.Builtins, reach.Builtins, gain.Builtins, sampling.Builtins, frequency.Builtins, files.Builtins,
+		matrix.Builtins, polynomial.Builtins, system.Builtins, reach.Builtins, gain.Builtins, sampling.Builtins, frequency.Builtins, response.Builtins, files.Builtins,
 	} {
 		all = append(all, family()...)
 	}

@@ -274,3 +274,43 @@ u7 = si_number(1 inch)`)
 		}
 	}
 }
+func judgeStep(r *caseRun) {
+	r.ok("f = figures(response(plant($A$, $B$, $C$, $D$), to: \"step\"))\nf5 = figures(response(plant($A$, $B$, $C$, $D$), to: \"step\"), within: 5%)")
+	report, five := r.get("f").(value.HasFields), r.get("f5").(value.HasFields)
+	field := func(h value.HasFields, name string) (float64, bool) {
+		v, ok := h.Field(name)
+		if !ok {
+			r.Fatalf("figures have no field %s", name)
+		}
+		n := numbers(v)
+		if len(n) != 1 {
+			return 0, false
+		}
+		return real(n[0]), true
+	}
+	if string(r.c.Expect["final_value"]) == "null" {
+		if _, ok := field(report, "final_value"); ok {
+			r.Error("a response without a final value was given one")
+		}
+		return
+	}
+	relative := r.rel(1e-3)
+	check := func(h value.HasFields, name, expect string, scale float64) {
+		raw, ok := r.c.Expect[expect]
+		if !ok || string(raw) == "null" {
+			return
+		}
+		want := floats(mustList(raw))[0] * scale
+		got, is := field(h, name)
+		if !is || math.Abs(got-want) > relative*math.Abs(want)+1e-6 {
+			r.Errorf("%s = %g, want %g", name, got, want)
+		}
+	}
+	check(report, "final_value", "final_value", 1)
+	check(report, "overshoot", "overshoot_percent", 0.01)
+	check(report, "overshoot_at", "peak_time", 1)
+	check(report, "rise", "rise_time_10_90", 1)
+	check(report, "settling", "settling_time_2pct", 1)
+	check(five, "settling", "settling_time_5pct", 1)
+	check(report, "undershoot", "undershoot_percent", 0.01)
+}

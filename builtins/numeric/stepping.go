@@ -172,3 +172,6 @@ func (p *Propagator) series(z []float64, t float64) {
 
 // Rates sets dst to M·z.
 func (p *Propagator) Rates(dst, z []float64) { product(dst, p.generator, z) }
+
+// Spare is room for one state that Step and Rates leave alone and Advance and Walk use.
+func (p *Propagator) Spare() []float64 { return p.spare }
