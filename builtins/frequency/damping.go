@@ -80,7 +80,7 @@ func damping(r system.Root, period float64) (value.Number, bool) {
 		}
 		return value.FloatErr(-real(z)/size, 2*r.Err/size), true
 	}
-	if z == 0 {
+	if cmplx.Abs(z) <= r.Err {
 		return value.Int(1), false
 	}
 	p := cmplx.Log(z)
@@ -110,7 +110,7 @@ func decay(r system.Root, period float64) (value.Number, bool) {
 		}
 		return value.FloatErr(-real(z), r.Err), true
 	}
-	if z == 0 {
+	if cmplx.Abs(z) <= r.Err {
 		return value.Int(0), false
 	}
 	return value.FloatErr(-math.Log(cmplx.Abs(z))/period, (r.Err/cmplx.Abs(z)+0x1p-52)/period), true

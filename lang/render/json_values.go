@@ -161,6 +161,11 @@ func valueJSON(v value.Value) any {
 	case value.Number:
 		return numberJSON{Kind: "number", Real: realJSON(x), Exact: exactText(x.Exact), Digits: digitsOf(x.Exact, x.Digits())}
 	case value.Quantity:
+		if x.Unit.IsPercent() { // shown in per cent, but a part
+			if part, err := x.SI(); err == nil {
+				return valueJSON(part)
+			}
+		}
 		return quantityJSON(x.Magnitude, x.Unit.Text)
 	case value.Complex:
 		return complexObject(x)
@@ -178,6 +183,8 @@ func valueJSON(v value.Value) any {
 		return p
 	case *value.Transfer:
 		return transferObject(x)
+	case *value.Response:
+		return responseObject(x)
 	case *value.Plant:
 		return plantObject(x, nil)
 	case *value.Model:

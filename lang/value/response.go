@@ -2,6 +2,7 @@ package value
 
 import (
 	"math"
+	"math/big"
 	"strings"
 
 	"gainwright/lang/diag"
@@ -85,7 +86,7 @@ func (r *Response) Field(name string) (Value, bool) {
 func (r *Response) stayReport() *Report {
 	out := &Report{Title: "times at a limit", Columns: []string{"input", "limit", "reached", "left"}}
 	for _, s := range r.Stays {
-		row := []Value{Text(s.Input), makeQuantity(FloatErr(s.Limit, 0), s.Unit), makeQuantity(FloatErr(s.From, 1e-12*(s.From+1e-300)), Second()), nil}
+		row := []Value{Text(s.Input), makeQuantity(Number{F: s.Limit}, s.Unit), makeQuantity(FloatErr(s.From, 1e-12*(s.From+1e-300)), Second()), nil}
 		if !math.IsInf(s.To, 1) {
 			row[3] = makeQuantity(FloatErr(s.To, 1e-12*s.To), Second())
 		}
@@ -152,3 +153,9 @@ func (r *Response) Index(subscripts []Subscript) (Value, error) {
 	}
 	return quantities(picked, t.Unit, t.Err), nil
 }
+
+// Percent is the unit of parts shown in per cent.
+func Percent() Unit { return Unit{Text: "%", Scale: big.NewRat(1, 100)} }
+
+// IsPercent tells whether a unit is per cent.
+func (u Unit) IsPercent() bool { return u.Text == "%" && u.Dim.IsPlain() }
