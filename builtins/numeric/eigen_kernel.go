@@ -10,6 +10,9 @@ import (
 // it blocked LAPACK routines take over (they win from about n = 13).
 const kernelLimit = 12
 
+// EigenvalueKernelLimit is the largest order that an EigenvalueKernel takes.
+const EigenvalueKernelLimit = kernelLimit
+
 // EigenvalueKernel computes eigenvalues of small real matrices without
 // allocating after its first use, for loops over samples. The zero value is
 // ready; one kernel must not be used from two goroutines at once.

@@ -9,6 +9,7 @@ import (
 	"github.com/spf13/cobra"
 
 	"gainwright/builtins"
+	"gainwright/builtins/numeric"
 	"gainwright/lang/diag"
 	"gainwright/lang/eval"
 	"gainwright/lang/render"
@@ -75,6 +76,11 @@ func (a *app) session(root *os.Root, progress *progress, interactive bool) *eval
 		Interactive: interactive,
 		Limits:      eval.Limits{Time: a.timeLimit},
 		Progress:    progress.report,
+
+		Eigenvalues: func() func([]complex128, []float64) bool {
+			return new(numeric.EigenvalueKernel).Eigenvalues
+		},
+		EigenvalueLimit: numeric.EigenvalueKernelLimit,
 	})
 }
 

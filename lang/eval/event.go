@@ -41,6 +41,7 @@ type Requirement struct {
 	Met            bool
 	WithinRounding bool // the bound lies inside the value's own uncertainty
 	NotJudged      bool // on one part of a divided study
+	Sampled        bool // it was judged for every sample of a study
 	Left, Right    value.Value
 	Op             string
 	Why            string

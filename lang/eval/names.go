@@ -29,6 +29,7 @@ func variable(name string) *value.Polynomial {
 func (s *Session) find(f *frame, name string, fromLibrary bool) (value.Value, *diag.Error) {
 	if !fromLibrary {
 		if v, ok := f.overlay[name]; ok {
+			f.task.reached = true
 			return v, nil
 		}
 		if b, ok := s.names[name]; ok {

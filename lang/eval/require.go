@@ -8,13 +8,6 @@ import (
 	"gainwright/lang/value"
 )
 
-// sampled is a value that many samples make up, such as a study, and that judges a
-// comparison itself. The value stands on the left of op unless swapped is set.
-type sampled interface {
-	value.Value
-	Judge(op string, bound value.Value, swapped bool) (*Requirement, error)
-}
-
 // require judges a requirement and tells how it came out.
 func (r *run) require(t *task, src *diag.Source, st *syntax.Require) *diag.Error {
 	j := judge{session: r.session, task: t, source: src}
@@ -58,6 +51,13 @@ func (j *judge) condition(e syntax.Expr) (*Requirement, *diag.Error) {
 	if err != nil {
 		return nil, err
 	}
+	if s, ok := v.(*value.Study); ok {
+		outcome, failure := judgeStudy(s, "==", value.Boolean(true), false)
+		if failure != nil {
+			return nil, asError(failure, "require").At(e.Extent()).In(j.source)
+		}
+		return outcome, nil
+	}
 	holds, failure := asTruth(v)
 	if failure != nil {
 		return nil, asError(failure, "require").At(e.Extent()).In(j.source)
@@ -69,6 +69,10 @@ func (j *judge) negation(e *syntax.Unary) (*Requirement, *diag.Error) {
 	inner, err := j.condition(e.X)
 	if err != nil || inner.NotJudged {
 		return inner, err
+	}
+	if inner.Sampled {
+		return nil, diag.New(diag.Type, "the negation of a requirement on a study is ambiguous").At(e.At).
+			WithHelp("it would hold when one sample does not; turn the comparison round instead")
 	}
 	inner.Met = !inner.Met
 	if inner.Op != "" && !inner.Met {
@@ -147,6 +151,9 @@ func inUnitOf(v, other value.Value, typed syntax.Expr) value.Value {
 	literal, isLiteral := typed.(*syntax.Number)
 	n, isNumber := value.Force(v).(value.Number)
 	q, isQuantity := value.Force(other).(value.Quantity)
+	if study, ok := other.(*value.Study); ok && len(study.Results) == 1 {
+		q.Unit, isQuantity = study.Results[0].Unit, !study.Results[0].Unit.IsNone()
+	}
 	if !isLiteral || literal.Unit != nil || !isNumber || !isQuantity || !q.Unit.IsCoherent() {
 		return v
 	}
@@ -154,11 +161,11 @@ func inUnitOf(v, other value.Value, typed syntax.Expr) value.Value {
 }
 
 func compareSides(op string, left, right value.Value) (*Requirement, error) {
-	if s, ok := left.(sampled); ok {
-		return s.Judge(op, right, false)
+	if s, ok := left.(*value.Study); ok {
+		return judgeStudy(s, op, right, false)
 	}
-	if s, ok := right.(sampled); ok {
-		return s.Judge(op, left, true)
+	if s, ok := right.(*value.Study); ok {
+		return judgeStudy(s, op, left, true)
 	}
 	met, err := value.Compare(op, left, right)
 	if err != nil {

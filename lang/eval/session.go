@@ -20,7 +20,16 @@ type Options struct {
 	Folder      string           // the folder of the first file below Root, slashes; "" for Root itself
 	Interactive bool             // the prompt: a name may be bound again, a binding can be taken back
 	Limits      Limits
-	Progress    func(done, total int) // hears from long built-ins; may be nil
+	Progress    func(done, total int) // hears from long built-ins and studies, from any goroutine; may be nil
+
+	// Eigenvalues makes a function, for one goroutine, that finds the eigenvalues of a
+	// row-major n×n matrix, which it destroys, for n up to EigenvalueLimit, without allocating;
+	// false tells that it failed. Studies are slower without it.
+	Eigenvalues     func() func(eigenvalues []complex128, matrix []float64) bool
+	EigenvalueLimit int
+
+	// Part of Parts is the share of every study that is computed; 0 for the whole.
+	Part, Parts int
 }
 
 // Session holds the names that statements bind. It is used by one goroutine at a time.
@@ -34,6 +43,8 @@ type Session struct {
 	interactive bool
 	limits      Limits
 	progress    func(done, total int)
+	eigenvalues eigenvalueKernel
+	part, parts int
 	config      *conf.Config
 
 	names   map[string]*binding
@@ -74,6 +85,9 @@ func New(o Options) *Session {
 		interactive: o.Interactive,
 		limits:      o.Limits.filled(),
 		progress:    o.Progress,
+		eigenvalues: eigenvalueKernel{o.Eigenvalues, o.EigenvalueLimit},
+		part:        o.Part,
+		parts:       o.Parts,
 		config:      newConfig(),
 		names:       map[string]*binding{},
 		used:        map[string]bool{},

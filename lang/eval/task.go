@@ -55,6 +55,7 @@ type task struct {
 	steps   int64
 	held    int64 // bytes of the results alive at this point, an upper estimate
 	depth   int
+	reached bool // a name that a study replaces was used
 	note    func(string)
 	close   func()
 }
