@@ -2,6 +2,7 @@ package response
 
 import (
 	"math"
+	"sort"
 
 	"gonum.org/v1/gonum/mat"
 
@@ -87,16 +88,8 @@ func (c *course) at(row int) func(t float64) float64 {
 }
 
 func pieceAt(pieces []piece, t float64) *piece {
-	low, high := 0, len(pieces)-1
-	for low < high {
-		middle := (low + high + 1) / 2
-		if pieces[middle].start <= t {
-			low = middle
-		} else {
-			high = middle
-		}
-	}
-	return &pieces[low]
+	after := sort.Search(len(pieces), func(i int) bool { return pieces[i].start > t })
+	return &pieces[max(after-1, 0)]
 }
 
 // at reads an output or an input between samples.

@@ -3,6 +3,7 @@ package response
 import (
 	"errors"
 	"math"
+	"sort"
 
 	"gainwright/builtins/numeric"
 	"gainwright/lang/diag"
@@ -205,16 +206,8 @@ func (m *ownMover) end(t float64, x []float64) error {
 
 // find gives the segment that holds a time; segments lie one after the other.
 func find(segments []*numeric.Segment, t float64) *numeric.Segment {
-	low, high := 0, len(segments)-1
-	for low < high {
-		middle := (low + high + 1) / 2
-		if segments[middle].Start <= t {
-			low = middle
-		} else {
-			high = middle
-		}
-	}
-	return segments[low]
+	after := sort.Search(len(segments), func(i int) bool { return segments[i].Start > t })
+	return segments[max(after-1, 0)]
 }
 
 // densePath is the motion of the equations under a law that acts all the time, or none.
