@@ -1,6 +1,7 @@
 package numeric
 
 import (
+	"fmt"
 	"math"
 	"math/cmplx"
 
@@ -95,6 +96,13 @@ func eigenvaluesInPlace(n int, a []float64, w []complex128) (ok bool) {
 // (J. H. Wilkinson, The Algebraic Eigenvalue Problem, 1965, chapter 2); where
 // neighbouring estimates overlap the eigenvalues form a cluster.
 func Eigen(a *mat.Dense) (*Eigensystem, error) {
+	return EigenWithin(a, nil)
+}
+
+// EigenWithin is Eigen for a matrix whose entries are known to ±uncertainty
+// only: the estimates count it with the rounding, and eigenvalues that it makes
+// indistinguishable form a cluster. A nil uncertainty is none.
+func EigenWithin(a, uncertainty *mat.Dense) (*Eigensystem, error) {
 	if err := squareAndFinite("the matrix", a); err != nil {
 		return nil, err
 	}
@@ -104,12 +112,23 @@ func Eigen(a *mat.Dense) (*Eigensystem, error) {
 	}
 	scaled := mat.DenseCopyOf(a)
 	exponent := scaleToUnitRange(scaled.RawMatrix().Data)
+	var within *mat.Dense
+	if uncertainty != nil {
+		if r, c := sizeOf(uncertainty); r != n || c != n {
+			return nil, fmt.Errorf("the uncertainty is %d×%d; the matrix is %d×%d", r, c, n, n)
+		}
+		if err := Finite("the uncertainty", uncertainty); err != nil {
+			return nil, err
+		}
+		within = mat.DenseCopyOf(uncertainty)
+		within.Apply(func(_, _ int, v float64) float64 { return math.Ldexp(math.Abs(v), -exponent) }, within)
+	}
 	var system *Eigensystem
 	var err error
 	if isExactlySymmetric(scaled) {
-		system, err = symmetricEigen(scaled)
+		system, err = symmetricEigen(scaled, within)
 	} else {
-		system, err = generalEigen(scaled)
+		system, err = generalEigen(scaled, within)
 	}
 	if err != nil {
 		return nil, err
@@ -169,7 +188,7 @@ func isExactlySymmetric(a *mat.Dense) bool {
 
 // symmetricEigen uses the symmetric QR iteration, whose vectors are orthogonal
 // and whose values err by rounding of the norm only.
-func symmetricEigen(a *mat.Dense) (*Eigensystem, error) {
+func symmetricEigen(a, within *mat.Dense) (*Eigensystem, error) {
 	n, _ := a.Dims()
 	vectors := mat.DenseCopyOf(a)
 	w := make([]float64, n)
@@ -187,6 +206,9 @@ func symmetricEigen(a *mat.Dense) (*Eigensystem, error) {
 	residual.Mul(a, vectors)
 	residual.Sub(&residual, &scaled)
 	backward := mat.Norm(&residual, 2)
+	if within != nil {
+		backward += mat.Norm(within, 2)
+	}
 	for j := 0; j < n; j++ {
 		s.Values[j] = complex(w[j], 0)
 		s.Condition[j] = 1

@@ -9,7 +9,7 @@ import (
 )
 
 // generalEigen balances, computes the Schur form and both sets of vectors.
-func generalEigen(a *mat.Dense) (*Eigensystem, error) {
+func generalEigen(a, within *mat.Dense) (*Eigensystem, error) {
 	n, _ := a.Dims()
 	balanced := mat.DenseCopyOf(a)
 	scale := make([]float64, n)
@@ -44,13 +44,22 @@ func generalEigen(a *mat.Dense) (*Eigensystem, error) {
 	s := &Eigensystem{Values: w, Condition: make([]float64, n), ErrorOf: make([]float64, n)}
 	balancedRight, balancedLeft := complexColumns(right, w), complexColumns(left, w)
 	firstOrderErrors(s.ErrorOf, &change, balancedRight, balancedLeft)
-	s.clusterErrors(norm)
 	kernels.Dgebak(lapack.PermuteScale, lapack.EVRight, n, low, high, scale, n, right.RawMatrix().Data, n)
 	kernels.Dgebak(lapack.PermuteScale, lapack.EVLeft, n, low, high, scale, n, left.RawMatrix().Data, n)
 	s.Right, s.Left = complexColumns(right, w), complexColumns(left, w)
 	for j := range w {
 		s.Condition[j] = 1 / cmplx.Abs(columnProduct(s.Left, s.Right, j))
 	}
+	level := unitRoundoff
+	if within != nil {
+		level += ratio(mat.Norm(within, 2), mat.Norm(a, 2))
+		passed := make([]float64, n)
+		firstOrderErrors(passed, within, s.Right, s.Left)
+		for j, e := range passed {
+			s.ErrorOf[j] += e
+		}
+	}
+	s.clusterErrors(norm, math.Min(level, 1))
 	s.VectorCondition = vectorCondition(right, w)
 	s.Certificate = Certificate{Method: "balanced real Schur form, back substitution for the vectors", Residual: ratio(residual, norm)}
 	return s, nil
@@ -123,14 +132,15 @@ func firstOrderErrors(e []float64, change *mat.Dense, right, left *mat.CDense) {
 // defective eigenvalue of multiplicity k the computed ones lie on a circle of
 // radius δ, their first-order estimates are δ/k and their spacing 2πδ/k: hence
 // the factors π and k. Where the estimate breaks down altogether (vectors
-// orthogonal to rounding) ‖A‖·u^(1/k) takes its place.
-func (s *Eigensystem) clusterErrors(norm float64) {
+// orthogonal to rounding) ‖A‖·level^(1/k) takes its place, with level the relative
+// size of the perturbation.
+func (s *Eigensystem) clusterErrors(norm, level float64) {
 	n := len(s.Values)
 	radius := make([]float64, n)
 	for i, e := range s.ErrorOf {
 		radius[i] = e
 		if !(e <= 0.1*norm) {
-			radius[i] = norm * math.Sqrt(unitRoundoff)
+			radius[i] = norm * math.Sqrt(level)
 		}
 	}
 	group := make([]int, n)
@@ -157,22 +167,40 @@ func (s *Eigensystem) clusterErrors(norm float64) {
 		members[find(i)] = append(members[find(i)], i)
 	}
 	for _, cluster := range members {
-		k := float64(len(cluster))
 		if len(cluster) > 1 {
 			s.Clusters = append(s.Clusters, cluster)
 		}
 		worst := 0.0
 		for _, i := range cluster {
-			bound := k * s.ErrorOf[i]
-			if !(s.ErrorOf[i] <= 0.1*norm) {
-				bound = norm * math.Pow(unitRoundoff, 1/k)
-			}
-			worst = math.Max(worst, bound)
+			worst = math.Max(worst, s.memberError(i, cluster, norm, level))
 		}
 		for _, i := range cluster {
 			s.ErrorOf[i] = worst
 		}
 	}
+}
+
+// memberError bounds the error of eigenvalue i in its cluster of k: k·e, or where
+// the computed members lie closer together than that, k·(e·Π|λᵢ − λⱼ|)^(1/k), since
+// the product of the gaps divides e. Members that coincide were kept 2⁻⁵²·|λ| apart
+// when their vectors were computed.
+func (s *Eigensystem) memberError(i int, cluster []int, norm, level float64) float64 {
+	k := float64(len(cluster))
+	e := s.ErrorOf[i]
+	if k == 1 {
+		return e
+	}
+	if math.IsInf(e, 0) {
+		return norm * math.Pow(level, 1/k)
+	}
+	root := math.Pow(e, 1/k)
+	for _, j := range cluster {
+		if j != i {
+			gap := math.Max(cmplx.Abs(s.Values[i]-s.Values[j]), machineEpsilon*math.Max(cmplx.Abs(s.Values[i]), level*norm))
+			root *= math.Pow(gap, 1/k)
+		}
+	}
+	return k * math.Min(e, root)
 }
 
 // vectorCondition is κ₂ of the unit eigenvectors. A pair of columns v, v̄ spans

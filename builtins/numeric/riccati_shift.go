@@ -97,7 +97,7 @@ func (d *riccatiData) finishShift(shift, root []float64) {
 // of hand.
 func (d *riccatiData) valueStep(shift []float64) bool {
 	n, m := d.n, d.m
-	eigen, err := symmetricEigen(mat.NewDense(m, m, d.shiftedWeight(shift)))
+	eigen, err := symmetricEigen(mat.NewDense(m, m, d.shiftedWeight(shift)), nil)
 	if err != nil {
 		return false
 	}

@@ -343,7 +343,7 @@ func (d *riccatiData) regularisedStart(ctx context.Context) ([]float64, error) {
 // negative beyond rounding.
 func (d *riccatiData) weightsSemidefinite() bool {
 	if d.verdict == nil {
-		s, err := symmetricEigen(mat.NewDense(d.n, d.n, append([]float64(nil), d.reducedQ...)))
+		s, err := symmetricEigen(mat.NewDense(d.n, d.n, append([]float64(nil), d.reducedQ...)), nil)
 		holds := err == nil
 		if holds {
 			smallest, largest := real(s.Values[0]), math.Abs(real(s.Values[d.n-1]))

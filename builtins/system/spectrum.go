@@ -61,7 +61,7 @@ func Eigenvalues(m *value.Matrix) ([]Root, error) {
 	if m.IsExact() && n <= ExactOrder {
 		return RootsOf(m.Exact().CharacteristicPolynomial())
 	}
-	e, err := numeric.Eigen(m.Dense())
+	e, err := numeric.EigenWithin(m.Dense(), uncertainty(m))
 	if err != nil {
 		return nil, Refused(err, "")
 	}
@@ -77,11 +77,24 @@ func Eigenvalues(m *value.Matrix) ([]Root, error) {
 			return better, nil
 		}
 	}
-	for i := range roots {
-		roots[i].Err += e.Condition[i] * m.Err * math.Sqrt(float64(n))
-	}
 	sortRoots(roots)
 	return roots, nil
+}
+
+// uncertainty is the matrix of the entries' error estimates, nil where there are none.
+func uncertainty(m *value.Matrix) *mat.Dense {
+	if m.Err == 0 {
+		return nil
+	}
+	n, k := m.Dims()
+	err := m.Err
+	if !(err <= math.MaxFloat64) { // nothing is known of the entries
+		re, _ := m.Floats()
+		err = largest(re)
+	}
+	d := mat.NewDense(n, k, nil)
+	d.Apply(func(_, _ int, _ float64) float64 { return err }, d)
+	return d
 }
 
 // sharpened finds the eigenvalues of the stored binary64 matrix in higher precision; what
@@ -98,16 +111,17 @@ func sharpened(m *value.Matrix, e *numeric.Eigensystem) ([]Root, error) {
 		return nil, err
 	}
 	for i := range roots {
-		best, cond := math.Inf(1), 1.0
+		if m.Err == 0 {
+			continue
+		}
+		best, passed := math.Inf(1), 0.0
 		for j, v := range e.Values {
 			if d := cmplx.Abs(v - roots[i].Value); d < best {
-				best, cond = d, e.Condition[j]
+				best, passed = d, e.ErrorOf[j]
 			}
 		}
-		roots[i].Err = cond*m.Err*math.Sqrt(float64(n)) + cmplx.Abs(roots[i].Value)*0x1p-53
-		if m.Err > 0 {
-			roots[i].Re, roots[i].Im = nil, nil
-		}
+		roots[i].Err = passed
+		roots[i].Re, roots[i].Im = nil, nil
 	}
 	return roots, nil
 }
