@@ -11,6 +11,7 @@ import (
 	"gainwright/builtins/reach"
 	"gainwright/builtins/response"
 	"gainwright/builtins/sampling"
+	"gainwright/builtins/study"
 	"gainwright/builtins/system"
 	"gainwright/lang/value"
 )
@@ -19,7 +20,7 @@ import (
 func Table() []*value.Builtin {
 	var all []*value.Builtin
 	for _, family := range [](func() []*value.Builtin){
-		matrix.Builtins, polynomial.Builtins, system.Builtins, reach.Builtins, gain.Builtins, sampling.Builtins, frequency.Builtins, response.Builtins, files.Builtins,
+		matrix.Builtins, polynomial.Builtins, system.Builtins, reach.Builtins, gain.Builtins, sampling.Builtins, frequency.Builtins, response.Builtins, study.Builtins, files.Builtins,
 	} {
 		all = append(all, family()...)
 	}

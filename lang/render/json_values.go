@@ -195,6 +195,8 @@ func valueJSON(v value.Value) any {
 		return reportObject(x)
 	case *value.Function:
 		return functionJSON{"function", x.Name, append([]string{}, x.Params...), x.Doc}
+	case *value.Study:
+		return studyObject(x)
 	case value.HasFields:
 		return fieldsObject(x)
 	}

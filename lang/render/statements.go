@@ -19,6 +19,34 @@ func Statements() []Statement {
 				"value's own uncertainty leaves undecided, ends the run with exit status 1."},
 		{"define", `define NAME(x, y) = EXPRESSION, "what it gives"`,
 			"A function. It may call itself; the depth is bounded."},
+		{"model", "model NAME { given …; input …; state …; output …; rate x = …; around rest }",
+			"A plant from its equations. given NAME = VALUE ± TOLERANCE is a parameter, and the tolerance may be in per cent; " +
+				"input, state and output declare signals, each with in UNIT and range R; let NAME = EXPRESSION names a part; rate x = EXPRESSION " +
+				"is the rate of each state, or next x = EXPRESSION with every 5 ms. around rest finds a point of rest; " +
+				"around x = 0.2 m sets the point; find F after it solves for what is named. Units are checked in every " +
+				"equation, and the matrices come from exact differentiation. The model is used as a plant; crane.given.M and crane.A are fields."},
+		{"diagram", "diagram NAME { input r; e = r - y; u = H * e; y = P * u; output y, u }",
+			"A plant wired from systems by signal equations: systems multiply signals. Algebraic loops are solved when they have one " +
+				"solution, and refused by the names of their signals otherwise; sample times must agree."},
+		{"study", "study NAME = EXPRESSION over MODEL, … samples N seed N at corners",
+			"What a number comes to when the parameters of models vary within their tolerances. Only the models named after over are " +
+				"replaced by their samples, in the expression and in the functions it calls; a name bound before keeps its value, so a gain " +
+				"designed at the nominal parameters stays what it was. Each sample finds its operating point anew. A draw is uniform between " +
+				"the tolerance's ends, and a hash of seed, sample number, model and parameter alone; sample 0 is the nominal one. 1000 samples " +
+				"and seed 1 are taken unless given; at corners adds the samples with every parameter at an end of its tolerance, at most 2^16. " +
+				"Several numbers share their samples: study swing = { damping: …, decay: … } over …, then swing.damping. Fields: smallest and largest, " +
+				"each with value, at and sample; median and quantile(q), of the drawn samples; failed, values, draws, parameters, and influence, " +
+				"the rank correlation of each parameter with the number. A requirement on a study must hold for every sample, corners included, and a " +
+				"failed sample makes it missed. When none of the drawn samples misses, it says how large a part of the distribution can miss all the same, at 95 %."},
+		{"sensitivity", "sensitivity(EXPRESSION) over MODEL, …",
+			"The relative change of a number for one per cent of each parameter, at the nominal parameters, strongest first. " +
+				"It may be bound to a name. Central differences at two steps, extrapolated (Richardson 1911); the digits shown are those that both steps agree on. " +
+				"For a parameter whose nominal value is zero, one per cent of the half-width of its tolerance is taken; when the number itself is zero, its change is given in its own unit."},
+		{"schedule", "schedule NAME = EXPRESSION over MODEL.PARAMETER from A to B in N steps",
+			"A gain, or a number, at N evenly spaced values of a parameter, ends included, with a check of what linear interpolation between " +
+				"them gives: in the middle of each interval the interpolated gain closes the loop of the model there, and its least damping and " +
+				"slowest decay stand beside those at the nodes. Only the model named is replaced. Fields: nodes, values, midpoints, and " +
+				"least_damping and slowest_decay, the smallest at all midpoints."},
 		{"use", `use "file.gain"`,
 			"Runs another file once, relative to this one and never outside the folder that the run started in. Its names come along."},
 		{"in", "EXPRESSION in UNIT",

@@ -61,6 +61,8 @@ func layValue(v value.Value, in *value.Unit, o Options) laid {
 		return layFunction(x)
 	case *value.Response:
 		return layResponse(x, o)
+	case *value.Study:
+		return layStudy(x, o)
 	case value.HasFields:
 		return layFields(x, o)
 	}

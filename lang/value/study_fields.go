@@ -52,6 +52,9 @@ func (s *Study) Field(name string) (Value, bool) {
 
 // numberField finds a field of a study of one number.
 func (s *Study) numberField(name string) (Value, bool) {
+	if len(s.Results) == 0 {
+		return nil, false
+	}
 	orNone := func(v Value, err error) (Value, bool) {
 		if err != nil {
 			return Text("none: every sample failed"), true

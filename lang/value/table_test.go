@@ -29,7 +29,7 @@ func oneOfEach(t *testing.T) map[Kind]Value {
 		KNumber: rat("3/2"), KComplex: Complex{ExactRe: big.NewRat(1, 1), ExactIm: big.NewRat(2, 1)},
 		KQuantity: Quantity{rat("2"), mustUnit(t, "N*m")}, KMatrix: a, KPolynomial: s, KTransfer: g, KPlant: p,
 		KGain: &Gain{Values: matrixOf(t, 1, 2, "1", "2")}, KList: &List{Items: []Value{rat("1"), rat("2")}},
-		KText: Text("a"), KBoolean: Boolean(true), KReport: &Report{}, KStudy: &Study{}, KResponse: stub(KResponse),
+		KText: Text("a"), KBoolean: Boolean(true), KReport: &Report{}, KStudy: &Study{Samples: 2, Results: []StudyResult{{Values: []float64{1, 2}}}}, KResponse: stub(KResponse),
 		KFunction: &Function{Name: "f"}, KModel: &Model{Name: "crane", Plant: p},
 	}
 }
