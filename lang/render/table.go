@@ -93,6 +93,9 @@ func tableSign(rows [][]value.Value, j int, o Options) sign {
 
 // lines writes the table within the width.
 func (t *table) lines(width int) []string {
+	if t.naturalWidth() > width {
+		t = t.withoutEmptyColumns()
+	}
 	widths, fits := t.widths(width)
 	if !fits {
 		return t.asRecords(width)
@@ -172,13 +175,35 @@ func (t *table) row(widths []int, text func(j int) string) string {
 	return strings.TrimRight(b.String(), " ")
 }
 
+// naturalWidth is the width of the table with nothing wrapped.
+func (t *table) naturalWidth() int {
+	total := -tableGap
+	for j, h := range t.heads {
+		total += max(widest(t.cells[j]), cells(h)) + tableGap
+	}
+	return total
+}
+
+// withoutEmptyColumns leaves out the columns in which no row has anything.
+func (t *table) withoutEmptyColumns() *table {
+	out := &table{sign: t.sign}
+	for j, texts := range t.cells {
+		if strings.TrimSpace(strings.Join(texts, "")) == "" && len(texts) > 0 {
+			continue
+		}
+		out.heads, out.cells = append(out.heads, t.heads[j]), append(out.cells, texts)
+		out.numeric, out.paired = append(out.numeric, t.numeric[j]), append(out.paired, t.paired[j])
+	}
+	return out
+}
+
 // widths fits the columns: heads are wrapped first, then the widest texts.
 func (t *table) widths(width int) ([]int, bool) {
-	widths, least := make([]int, len(t.heads)), make([]int, len(t.heads))
+	widths, least, bodies := make([]int, len(t.heads)), make([]int, len(t.heads)), make([]int, len(t.heads))
 	total := -tableGap
 	for j, h := range t.heads {
 		body := widest(t.cells[j])
-		widths[j] = max(body, cells(h))
+		widths[j], bodies[j] = max(body, cells(h)), body
 		word := widest(strings.Fields(h))
 		least[j] = max(body, word)
 		if !t.numeric[j] {
@@ -192,20 +217,24 @@ func (t *table) widths(width int) ([]int, bool) {
 		}
 		total += widths[j] + tableGap
 	}
-	for total > width {
-		at, slack := -1, 0
-		for j := range widths {
-			if s := widths[j] - least[j]; s > 0 && widths[j] > slack {
-				at, slack = j, widths[j]
+	shrink := func(least func(j int) int) {
+		for total > width {
+			at, slack := -1, 0
+			for j := range widths {
+				if widths[j] > least(j) && widths[j] > slack {
+					at, slack = j, widths[j]
+				}
 			}
+			if at < 0 {
+				return
+			}
+			widths[at]--
+			total--
 		}
-		if at < 0 {
-			return widths, false
-		}
-		widths[at]--
-		total--
 	}
-	return widths, true
+	shrink(func(j int) int { return max(least[j], bodies[j]) })
+	shrink(func(j int) int { return least[j] })
+	return widths, total <= width
 }
 
 // splitPair sets a conjugate pair on two lines, its imaginary part below the real one.
