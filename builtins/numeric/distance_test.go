@@ -40,7 +40,7 @@ func sigmaMin(t testing.TB, a, b *mat.Dense, z complex128) float64 {
 }
 
 func TestPublishedDistances(t *testing.T) {
-	for _, c := range structureCases(t, "pub-distance-") {
+	for _, c := range structureCases(t, "distance-") {
 		a, b := matrixOf(t, c.Inputs["A"]), matrixOf(t, c.Inputs["B"])
 		got, err := DistanceToUnreachable(context.Background(), a, b, 10*time.Second)
 		if err != nil {

@@ -8,13 +8,14 @@ import (
 	"math/big"
 	"math/cmplx"
 	"os"
+	"path/filepath"
 	"strings"
 	"testing"
 
 	"gonum.org/v1/gonum/mat"
 )
 
-// structureCase is one entry of testdata/structure_published.json.
+// structureCase is one entry of testdata/published.
 type structureCase struct {
 	ID        string
 	Source    string
@@ -23,19 +24,33 @@ type structureCase struct {
 	Tolerance map[string]json.RawMessage
 }
 
+// publishedFiles decodes every file of testdata/published that the pattern names into cases.
+func publishedFiles[Case any](t *testing.T, pattern string) []Case {
+	t.Helper()
+	files, err := filepath.Glob("../../testdata/published/" + pattern)
+	if err != nil || len(files) == 0 {
+		t.Fatalf("no published cases in %s: %v", pattern, err)
+	}
+	var out []Case
+	for _, file := range files {
+		data, err := os.ReadFile(file)
+		if err != nil {
+			t.Fatal(err)
+		}
+		var cases []Case
+		if err := json.Unmarshal(data, &cases); err != nil {
+			t.Fatalf("%s: %v", file, err)
+		}
+		out = append(out, cases...)
+	}
+	return out
+}
+
 // structureCases reads the cases whose id has the prefix.
 func structureCases(t *testing.T, prefix string) []structureCase {
 	t.Helper()
-	data, err := os.ReadFile("testdata/structure_published.json")
-	if err != nil {
-		t.Fatal(err)
-	}
-	var file struct{ Cases []structureCase }
-	if err := json.Unmarshal(data, &file); err != nil {
-		t.Fatal(err)
-	}
 	var out []structureCase
-	for _, c := range file.Cases {
+	for _, c := range publishedFiles[structureCase](t, "*.json") {
 		if strings.HasPrefix(c.ID, prefix) {
 			out = append(out, c)
 		}
@@ -131,7 +146,7 @@ func closedPoles(t *testing.T, a, b, k *mat.Dense) []complex128 {
 }
 
 func TestPublishedPlacement(t *testing.T) {
-	for _, c := range structureCases(t, "pub-place-") {
+	for _, c := range structureCases(t, "place-") {
 		t.Run(c.ID, func(t *testing.T) {
 			a, b := matrixOf(t, c.Inputs["A"]), matrixOf(t, c.Inputs["B"])
 			poles := complexList(t, c.Inputs["poles"], c.Inputs["pairs"] != nil)

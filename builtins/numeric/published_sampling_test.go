@@ -88,9 +88,11 @@ type publishedCase struct {
 		A, B, C, Q, R, W publishedMatrix
 		T                number
 		Num, Den         []number
+		Equation         string
 	}
 	Expect struct {
 		Ad, Bd, ExpA, Qd, Nd, Rd, Wd publishedMatrix
+		X                            publishedMatrix
 		Hankel                       []number        `json:"hankel_singular_values"`
 		Reach                        publishedMatrix `json:"reachability_gramian"`
 		See                          publishedMatrix `json:"observability_gramian"`
@@ -116,18 +118,8 @@ func (c *publishedCase) check(t *testing.T, what string, got *mat.Dense, want pu
 }
 
 func TestPublishedSamplingCases(t *testing.T) {
-	data, err := os.ReadFile("testdata/published_sampling.json")
-	if err != nil {
-		t.Fatal(err)
-	}
-	var file struct{ Cases []publishedCase }
-	if err := json.Unmarshal(data, &file); err != nil {
-		t.Fatal(err)
-	}
-	if len(file.Cases) != 14 {
-		t.Fatalf("%d cases read", len(file.Cases))
-	}
-	for _, c := range file.Cases {
+	cases := publishedFiles[publishedCase](t, "sampling.json")
+	for _, c := range append(cases, publishedFiles[publishedCase](t, "gramians.json")...) {
 		switch in := c.Inputs; {
 		case len(in.Num) > 0:
 			c.checkTransfer(t)
@@ -153,6 +145,12 @@ func TestPublishedSamplingCases(t *testing.T) {
 			c.check(t, "the exponential", e, c.Expect.ExpA)
 		case len(c.Expect.Hankel) > 0:
 			c.checkHankel(t)
+		case in.Equation != "":
+			x, err := Lyapunov(context.Background(), in.A.dense(), in.Q.dense(), true)
+			if err != nil {
+				t.Fatal(err)
+			}
+			c.check(t, "X", x.X, c.Expect.X)
 		default:
 			ad, bd, _, err := Hold(in.A.dense(), in.B.dense(), float64(in.T))
 			if err != nil {

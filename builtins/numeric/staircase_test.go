@@ -13,7 +13,7 @@ import (
 )
 
 func TestPublishedReachability(t *testing.T) {
-	for _, c := range structureCases(t, "pub-reach-") {
+	for _, c := range structureCases(t, "reach-") {
 		a, b := matrixOf(t, c.Inputs["A"]), matrixOf(t, c.Inputs["B"])
 		for name, decide := range map[string]func(a, b *mat.Dense, tol float64) (*StaircaseForm, error){"balanced": Reachability, "as it stands": Staircase} {
 			form, err := decide(a, b, 0)
@@ -83,7 +83,7 @@ func checkStaircase(t *testing.T, name string, a, b *mat.Dense, form *StaircaseF
 }
 
 func TestPublishedObservability(t *testing.T) {
-	for _, c := range structureCases(t, "pub-obs-") {
+	for _, c := range structureCases(t, "obs-") {
 		form, err := Observability(matrixOf(t, c.Inputs["A"]), matrixOf(t, c.Inputs["C"]), 0)
 		if err != nil {
 			t.Fatal(err)
@@ -196,7 +196,7 @@ func TestStaircaseWherePowersFail(t *testing.T) {
 }
 
 func TestPublishedKalmanSplit(t *testing.T) {
-	for _, c := range structureCases(t, "pub-kalman-4") {
+	for _, c := range structureCases(t, "kalman-4") {
 		a, b, out := matrixOf(t, c.Inputs["A"]), matrixOf(t, c.Inputs["B"]), matrixOf(t, c.Inputs["C"])
 		split, err := KalmanSplit(a, b, out)
 		if err != nil {

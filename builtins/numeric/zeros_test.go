@@ -61,7 +61,7 @@ func (r zerosReference) zeros() []complex128 {
 }
 
 func TestPublishedZeros(t *testing.T) {
-	for _, c := range structureCases(t, "pub-zeros-") {
+	for _, c := range structureCases(t, "zeros-") {
 		t.Run(c.ID, func(t *testing.T) {
 			got, err := TransmissionZeros(context.Background(), matrixOf(t, c.Inputs["A"]), matrixOf(t, c.Inputs["B"]), matrixOf(t, c.Inputs["C"]), matrixOf(t, c.Inputs["D"]))
 			if err != nil {
@@ -198,7 +198,7 @@ func TestDecouplingZeros(t *testing.T) {
 	ctx := context.Background()
 	// One mode in each of the four parts (see the published split): poles −1 moved and seen,
 	// −2 moved only, −3 seen only, −4 neither; 1/(s + 1) remains.
-	c := structureCases(t, "pub-kalman-4")[0]
+	c := structureCases(t, "kalman-4")[0]
 	got, err := TransmissionZeros(ctx, matrixOf(t, c.Inputs["A"]), matrixOf(t, c.Inputs["B"]), matrixOf(t, c.Inputs["C"]), nil)
 	if err != nil {
 		t.Fatal(err)

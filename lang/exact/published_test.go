@@ -8,6 +8,7 @@ import (
 	"math/big"
 	"math/cmplx"
 	"os"
+	"path/filepath"
 	"testing"
 )
 
@@ -19,31 +20,29 @@ type publishedCase struct {
 
 func publishedCases(t *testing.T, function string) []publishedCase {
 	t.Helper()
-	raw, err := os.ReadFile("testdata/published.json")
+	files, err := filepath.Glob("../../testdata/published/*.json")
 	if err != nil {
 		t.Fatal(err)
 	}
-	var file struct {
-		Header map[string]string
-		Cases  []publishedCase
-	}
-	decoder := json.NewDecoder(bytes.NewReader(raw))
-	decoder.UseNumber()
-	if err := decoder.Decode(&file); err != nil {
-		t.Fatal(err)
-	}
-	for _, key := range []string{"tool", "version", "command", "date"} {
-		if file.Header[key] == "" {
-			t.Fatalf("the header lacks %q", key)
-		}
-	}
 	var out []publishedCase
-	for _, c := range file.Cases {
-		if c.Source == "" {
-			t.Fatalf("%s names no source", c.ID)
+	for _, file := range files {
+		raw, err := os.ReadFile(file)
+		if err != nil {
+			t.Fatal(err)
 		}
-		if c.Function == function {
-			out = append(out, c)
+		var cases []publishedCase
+		decoder := json.NewDecoder(bytes.NewReader(raw))
+		decoder.UseNumber()
+		if err := decoder.Decode(&cases); err != nil {
+			t.Fatalf("%s: %v", file, err)
+		}
+		for _, c := range cases {
+			if c.Source == "" {
+				t.Fatalf("%s names no source", c.ID)
+			}
+			if c.Function == function {
+				out = append(out, c)
+			}
 		}
 	}
 	if len(out) == 0 {
