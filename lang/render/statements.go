@@ -20,7 +20,7 @@ func Statements() []Statement {
 		{"define", `define NAME(x, y) = EXPRESSION, "what it gives"`,
 			"A function. It may call itself; the depth is bounded."},
 		{"model", "model NAME { given …; input …; state …; output …; rate x = …; around rest }",
-			"A plant from its equations. given NAME = VALUE ± TOLERANCE is a parameter, and the tolerance may be in per cent; " +
+			"A plant from its equations. given NAME = VALUE ± TOLERANCE is a parameter (several with commas between), and the tolerance may be in per cent; " +
 				"input, state and output declare signals, each with in UNIT and range R; let NAME = EXPRESSION names a part; rate x = EXPRESSION " +
 				"is the rate of each state, or next x = EXPRESSION with every 5 ms. around rest finds a point of rest; " +
 				"around x = 0.2 m sets the point; find F after it solves for what is named. Units are checked in every " +

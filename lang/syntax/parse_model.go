@@ -21,7 +21,7 @@ func (p *parser) diagram() Statement {
 }
 
 // body reads { … } with one item a line, or separated by semicolons.
-func (p *parser) body(form string, item func() Item) []Item {
+func (p *parser) body(form string, item func() []Item) []Item {
 	var items []Item
 	p.expectOpen("{", form)
 	p.enter(modeLines, insideBody)
@@ -34,7 +34,7 @@ func (p *parser) body(form string, item func() Item) []Item {
 		if p.raw(0).kind == tokenEnd {
 			p.unexpected(p.raw(0))
 		}
-		items = append(items, item())
+		items = append(items, item()...)
 		if t := p.raw(0); !t.is(";") && !t.is("}") && t.kind != tokenNewline {
 			p.unexpected(t)
 		}
@@ -54,7 +54,7 @@ func (p *parser) skipSeparators() {
 
 const modelHelp = "an item begins with given, input, state, output, let, rate, next, every or around"
 
-func (p *parser) modelItem() Item {
+func (p *parser) modelItem() []Item {
 	t := p.raw(0)
 	if t.kind == tokenWord && p.raw(1).is("=") {
 		p.fail(diag.Syntax, t.span, "write let "+t.text+" = …, or given "+t.text+" = … for a parameter", "an equation of a model begins with a word that says what it is")
@@ -62,16 +62,16 @@ func (p *parser) modelItem() Item {
 	if t.kind == tokenWord {
 		switch t.text {
 		case "given":
-			return p.given()
+			return p.givens()
 		case "input", "state", "output":
-			return p.signals()
+			return []Item{p.signals()}
 		case "let", "rate", "next":
-			return p.equation(t.text)
+			return []Item{p.equation(t.text)}
 		case "every":
 			start := p.takeFirst().span.Start
-			return &Every{Period: p.expression(), Span: p.from(start)}
+			return []Item{&Every{Period: p.expression(), Span: p.from(start)}}
 		case "around":
-			return p.around()
+			return []Item{p.around()}
 		}
 		help := modelHelp
 		if near := diag.Nearest(t.text, []string{"given", "input", "state", "output", "let", "rate", "next", "every", "around"}); near != "" {
@@ -84,10 +84,10 @@ func (p *parser) modelItem() Item {
 }
 
 // diagramItem reads input …, output … or NAME = EXPR.
-func (p *parser) diagramItem() Item {
+func (p *parser) diagramItem() []Item {
 	t := p.raw(0)
 	if t.kind == tokenWord && !p.raw(1).is("=") && (t.text == "input" || t.text == "output") {
-		return p.signals()
+		return []Item{p.signals()}
 	}
 	if t.kind != tokenWord {
 		p.failHere(t, "input r; e = r - y; output y", "an item of the diagram is expected before %s", describe(t))
@@ -96,21 +96,30 @@ func (p *parser) diagramItem() Item {
 	name := p.newName("a signal's name")
 	p.markFirst()
 	p.expect("=", "a diagram holds input …, output … and NAME = EXPR")
-	return &Let{Name: name, Expr: p.expression(), Span: p.from(start)}
+	return []Item{&Let{Name: name, Expr: p.expression(), Span: p.from(start)}}
 }
 
-// given reads given NAME = VALUE ± TOL.
-func (p *parser) given() Item {
+// givens reads given NAME = VALUE ± TOL, NAME = VALUE ± TOL, ….
+func (p *parser) givens() []Item {
 	const form = "given NAME = VALUE ± TOLERANCE"
 	start := p.takeFirst().span.Start
-	g := &Given{Name: p.newName("the parameter's name")}
-	p.expect("=", form)
-	g.Value = p.expression()
-	if b, ok := g.Value.(*Binary); ok && b.Op == "±" {
-		g.Value, g.Tolerance = b.L, b.R
+	var items []Item
+	for {
+		g := &Given{Name: p.newName("the parameter's name")}
+		p.expect("=", form)
+		g.Value = p.expression()
+		if b, ok := g.Value.(*Binary); ok && b.Op == "±" {
+			g.Value, g.Tolerance = b.L, b.R
+		}
+		g.Span = p.from(start)
+		items = append(items, g)
+		if !p.raw(0).is(",") {
+			return items
+		}
+		p.take()
+		p.skipLines()
+		start = p.raw(0).span.Start
 	}
-	g.Span = p.from(start)
-	return g
 }
 
 // equation reads let NAME = EXPR, rate NAME = EXPR, next NAME = EXPR.

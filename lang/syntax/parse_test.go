@@ -210,7 +210,7 @@ func TestStatements(t *testing.T) {
 
 const modelText = `model crane {
   given M = 1200 kg ± 5%  # trolley
-  given g = 9.81 m/s^2; given e = 3 +/- 0.1
+  given g = 9.81 m/s^2; given e = 3 +/- 0.1, h = 2
   input F in N range 3000
   input h
   state x in m range 10, v in m/s range 2,
@@ -233,7 +233,7 @@ const modelText = `model crane {
 }`
 
 func TestModel(t *testing.T) {
-	want := `model crane; given M = 1200<kg> ± 5%; given g = 9.81<m s^-2> ± -; given e = 3 ± 0.1` +
+	want := `model crane; given M = 1200<kg> ± 5%; given g = 9.81<m s^-2> ± -; given e = 3 ± 0.1; given h = 2 ± -` +
 		`; input F in <N> range 3000,; input h,` +
 		`; state x in <m> range 10, v in <m s^-1> range 2, a in <rad> range 0.1<rad>,` +
 		`; output x, a,; output y in <mm> = (1000 * x), z in <m> range 3 = x,` +
