@@ -105,14 +105,22 @@ func (s *study) prepare(t *task, st *syntax.Study) *diag.Error {
 		v.Part, v.Parts = s.session.part, s.session.parts
 	}
 	for _, e := range st.Entries {
-		l := &lowering{session: s.session, source: s.source}
-		code := l.compile(e.Expr, false)
-		if l.err != nil {
-			return l.err
+		if err := s.add(e); err != nil {
+			return err
 		}
-		s.entries = append(s.entries, entry{expr: e.Expr, code: code})
-		v.Results = append(v.Results, value.StudyResult{Name: e.Name.Name, Text: oneLine(sliceOf(s.source, e.Expr.Extent()))})
 	}
+	return nil
+}
+
+// add compiles a number of the study.
+func (s *study) add(e syntax.StudyEntry) *diag.Error {
+	l := &lowering{session: s.session, source: s.source}
+	code := l.compile(e.Expr, false)
+	if l.err != nil {
+		return l.err
+	}
+	s.entries = append(s.entries, entry{expr: e.Expr, code: code})
+	s.value.Results = append(s.value.Results, value.StudyResult{Name: e.Name.Name, Text: oneLine(sliceOf(s.source, e.Expr.Extent()))})
 	return nil
 }
 
@@ -281,7 +289,7 @@ func (s *study) unreached(e entry) *diag.Error {
 	for _, n := range s.value.Models[1:] {
 		names += ", " + n
 	}
-	return diag.New(diag.Name, "this does not reach %s, so it would be the same for every sample", names).At(e.expr.Extent()).
+	return diag.New(diag.Name, "this does not reach %s, so it would stay the same", names).At(e.expr.Extent()).
 		WithHelp("names bound before keep their values: write out what varies, as in least_damping(closed(%s, K))", s.value.Models[0]).In(s.source)
 }
 
@@ -321,7 +329,7 @@ func numberIn(v value.Value, r *value.StudyResult) (float64, error) {
 			return n.Float64(), nil
 		}
 	}
-	return 0, diag.New(diag.Type, "a study takes a number, and this is %s", value.Describe(v))
+	return 0, diag.New(diag.Type, "a number stands here, and this is %s", value.Describe(v))
 }
 
 func truthNumber(holds bool) float64 {

@@ -58,6 +58,13 @@ func (w *worker) linearise(sample int) (failed *studied, why error) {
 		for j, at := range m.varied {
 			w.parameters[k][at] = w.draw[m.first+j]
 		}
+	}
+	return w.linearised()
+}
+
+// linearised finds every model's operating point and matrices for the parameters set.
+func (w *worker) linearised() (failed *studied, why error) {
+	for k, m := range w.study.models {
 		if w.evaluators[k] == nil {
 			continue
 		}
@@ -73,6 +80,19 @@ func (w *worker) place(sample int) (failed *studied, why error) {
 	if failed, why := w.linearise(sample); failed != nil {
 		return failed, why
 	}
+	return w.named()
+}
+
+// placeParameters makes the models with the parameters set the meaning of their names.
+func (w *worker) placeParameters() (failed *studied, why error) {
+	if failed, why := w.linearised(); failed != nil {
+		return failed, why
+	}
+	return w.named()
+}
+
+// named makes what was linearised the meaning of the models' names.
+func (w *worker) named() (failed *studied, why error) {
 	for k, m := range w.study.models {
 		v, err := m.with(w.parameters[k], w.flats[k])
 		if err != nil {

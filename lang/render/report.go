@@ -68,6 +68,10 @@ const mostFieldItems = 40
 func bySize(fields []value.Named, hasTable bool, o Options) (small []value.Named, large []string) {
 	for _, f := range fields {
 		f.Value = force(f.Value)
+		if fn, ok := f.Value.(*value.Function); ok && hasTable {
+			large = append(large, fmt.Sprintf(".%s(%s)", f.Name, strings.Join(fn.Params, ", ")))
+			continue
+		}
 		_, _, short := nested(f.Value, o)
 		list, isList := f.Value.(*value.List)
 		isLong := isList && hasTable && len(list.Items) > mostFieldItems

@@ -39,14 +39,15 @@ func Statements() []Statement {
 				"the rank correlation of each parameter with the number. A requirement on a study must hold for every sample, corners included, and a " +
 				"failed sample makes it missed. When none of the drawn samples misses, it says how large a part of the distribution can miss all the same, at 95 %."},
 		{"sensitivity", "sensitivity(EXPRESSION) over MODEL, …",
-			"The relative change of a number for one per cent of each parameter, at the nominal parameters, strongest first. " +
-				"It may be bound to a name. Central differences at two steps, extrapolated (Richardson 1911); the digits shown are those that both steps agree on. " +
+			"The relative change of a number for one per cent more of each parameter, at the nominal parameters, strongest first, and what it comes to " +
+				"over the parameter's tolerance. It may be bound to a name; its columns are fields, as in w.change_per_percent[1]. Each change finds the operating point anew. " +
+				"Central differences at three steps, extrapolated twice (Richardson 1911); the digits shown are those that the steps agree on. " +
 				"For a parameter whose nominal value is zero, one per cent of the half-width of its tolerance is taken; when the number itself is zero, its change is given in its own unit."},
 		{"schedule", "schedule NAME = EXPRESSION over MODEL.PARAMETER from A to B in N steps",
-			"A gain, or a number, at N evenly spaced values of a parameter, ends included, with a check of what linear interpolation between " +
-				"them gives: in the middle of each interval the interpolated gain closes the loop of the model there, and its least damping and " +
-				"slowest decay stand beside those at the nodes. Only the model named is replaced. Fields: nodes, values, midpoints, and " +
-				"least_damping and slowest_decay, the smallest at all midpoints."},
+			"A gain, a matrix or a number at N evenly spaced values of a parameter, ends included, with a check of what straight lines between " +
+				"them give: in the middle of each interval the interpolated gain closes the loop of the model there (of an observer, the loop of its error), and its least damping and " +
+				"slowest decay stand beside those at the nodes; an interval in which they fall is named. Of what closes no loop the table shows how far the interpolated value is from the true one. " +
+				"Only the model named is replaced. Fields: least_damping and slowest_decay, the smallest of all rows; nodes; values, a row a node; and at(x), which interpolates as a controller would."},
 		{"use", `use "file.gain"`,
 			"Runs another file once, relative to this one and never outside the folder that the run started in. Its names come along."},
 		{"in", "EXPRESSION in UNIT",
