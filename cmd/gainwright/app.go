@@ -30,6 +30,7 @@ type app struct {
 	status      int
 
 	json      bool
+	part      string // 3/16
 	digits    int
 	timeLimit time.Duration
 }
@@ -90,7 +91,8 @@ or an interruption, 64 wrong usage.`,
 	root.SetFlagErrorFunc(func(_ *cobra.Command, err error) error { return usageError{message: err.Error()} })
 	root.CompletionOptions.HiddenDefaultCmd = false
 	a.runFlags(root)
-	root.AddCommand(a.checkCommand(), a.tidyCommand(), a.explainCommand(), a.reportCommand(), a.followCommand(), a.versionCommand())
+	root.Flags().StringVar(&a.part, "part", "", "compute one part of the studies, such as 3/16, and write it for merge")
+	root.AddCommand(a.checkCommand(), a.mergeCommand(), a.tidyCommand(), a.explainCommand(), a.reportCommand(), a.followCommand(), a.versionCommand())
 	return root
 }
 

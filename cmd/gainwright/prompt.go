@@ -4,6 +4,7 @@ import (
 	"os"
 
 	"gainwright/lang/diag"
+	"gainwright/lang/eval"
 	"gainwright/lang/prompt"
 	"gainwright/lang/render"
 )
@@ -16,11 +17,13 @@ func (a *app) prompt() error {
 	}
 	defer root.Close()
 	progress := newProgress(a.errOut)
+	options := a.options(root, progress)
+	options.Interactive = true
 	w := newWords()
 	in, inIsTerminal := terminalOf(a.in)
 	_, outIsTerminal := terminalOf(a.out)
 	status := prompt.Run(prompt.Options{
-		Session:  a.session(root, progress, true),
+		Session:  eval.New(options),
 		Table:    w.table,
 		Root:     root,
 		In:       a.in,

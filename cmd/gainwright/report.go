@@ -117,7 +117,7 @@ func (a *app) documentOf(ctx context.Context, d *design) (*report.Document, []ev
 	defer root.Close()
 	progress := newProgress(a.errOut)
 	var events []eval.Event
-	outcome := a.session(root, progress, false).RunText(ctx, d.source, func(e eval.Event) { events = append(events, e) })
+	outcome := eval.New(a.options(root, progress)).RunText(ctx, d.source, func(e eval.Event) { events = append(events, e) })
 	progress.clear()
 	doc := report.New(report.Run{Source: d.source, Events: events, Options: render.Options{Digits: a.digits},
 		Version: versionText(), Folder: below(d.folder)})

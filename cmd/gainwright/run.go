@@ -13,6 +13,7 @@ import (
 	"gainwright/lang/diag"
 	"gainwright/lang/eval"
 	"gainwright/lang/render"
+	"gainwright/lang/value"
 	"gainwright/stdlib"
 )
 
@@ -23,11 +24,17 @@ func (a *app) runRoot(_ *cobra.Command, args []string) error {
 	}
 	switch len(args) {
 	case 0:
+		if a.part != "" {
+			return usage("gainwright FILE --part 3/16", "--part needs a file")
+		}
 		if a.json {
 			return usage("gainwright --json FILE runs a file, - for standard input", "--json needs a file")
 		}
 		return a.prompt()
 	case 1:
+		if a.part != "" {
+			return a.runPart(args[0], a.part)
+		}
 		return a.runFile(args[0])
 	}
 	if _, err := os.Stat(args[0]); err != nil {
@@ -47,13 +54,20 @@ func (a *app) runFile(name string) error {
 // runDesign runs a design and sets the exit status. With onlyVerdicts it shows
 // requirements, claims and errors alone.
 func (a *app) runDesign(d *design, onlyVerdicts bool) error {
+	return a.runDesignWith(d, onlyVerdicts, nil)
+}
+
+// runDesignWith is runDesign with the values of its studies taken from elsewhere, unless
+// computed is nil.
+func (a *app) runDesignWith(d *design, onlyVerdicts bool, computed func(string, *value.Study) ([][]float64, error)) error {
 	root, err := os.OpenRoot(d.folder)
 	if err != nil {
 		return unreadable(d.folder, err)
 	}
 	defer root.Close()
 	progress := newProgress(a.errOut)
-	session := a.session(root, progress, false)
+	options := a.options(root, progress)
+	options.Computed = computed
 
 	out := bufio.NewWriterSize(a.out, 64<<10)
 	defer out.Flush()
@@ -62,26 +76,26 @@ func (a *app) runDesign(d *design, onlyVerdicts bool) error {
 	defer stop()
 	// A second interruption ends the program at once.
 	context.AfterFunc(ctx, stop)
-	outcome := session.RunText(ctx, d.source, emit)
+	outcome := eval.New(options).RunText(ctx, d.source, emit)
 	progress.clear()
 	a.worsen(statusOf(outcome))
 	return nil
 }
 
-func (a *app) session(root *os.Root, progress *progress, interactive bool) *eval.Session {
-	return eval.New(eval.Options{
-		Builtins:    builtins.Table(),
-		Library:     stdlib.Files,
-		Root:        root,
-		Interactive: interactive,
-		Limits:      eval.Limits{Time: a.timeLimit},
-		Progress:    progress.report,
+// options are those of a run with everything that the program has.
+func (a *app) options(root *os.Root, progress *progress) eval.Options {
+	return eval.Options{
+		Builtins: builtins.Table(),
+		Library:  stdlib.Files,
+		Root:     root,
+		Limits:   eval.Limits{Time: a.timeLimit},
+		Progress: progress.report,
 
 		Eigenvalues: func() func([]complex128, []float64) bool {
 			return new(numeric.EigenvalueKernel).Eigenvalues
 		},
 		EigenvalueLimit: numeric.EigenvalueKernelLimit,
-	})
+	}
 }
 
 // emitter writes events: values and verdicts on standard output, errors in text on

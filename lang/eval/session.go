@@ -30,6 +30,10 @@ type Options struct {
 
 	// Part of Parts is the share of every study that is computed; 0 for the whole.
 	Part, Parts int
+
+	// Computed gives the values of a study that was computed elsewhere, a row for each of
+	// its results with a value for every sample; nil to compute studies here.
+	Computed func(name string, s *value.Study) ([][]float64, error)
 }
 
 // Session holds the names that statements bind. It is used by one goroutine at a time.
@@ -45,6 +49,7 @@ type Session struct {
 	progress    func(done, total int)
 	eigenvalues eigenvalueKernel
 	part, parts int
+	computed    func(name string, s *value.Study) ([][]float64, error)
 	config      *conf.Config
 
 	names   map[string]*binding
@@ -88,6 +93,7 @@ func New(o Options) *Session {
 		eigenvalues: eigenvalueKernel{o.Eigenvalues, o.EigenvalueLimit},
 		part:        o.Part,
 		parts:       o.Parts,
+		computed:    o.Computed,
 		config:      newConfig(),
 		names:       map[string]*binding{},
 		used:        map[string]bool{},

@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"math"
 	"math/bits"
 
 	"gainwright/lang/diag"
@@ -24,6 +25,7 @@ const (
 // study is a study statement being run.
 type study struct {
 	session *Session
+	name    syntax.Ident
 	source  *diag.Source
 	models  []*studied
 	entries []entry
@@ -54,7 +56,7 @@ func (r *run) runStudy(t *task, src *diag.Source, st *syntax.Study) *diag.Error 
 	if err != nil {
 		return err
 	}
-	s := &study{session: r.session, source: src}
+	s := &study{session: r.session, source: src, name: st.Name}
 	if err := s.prepare(t, st); err != nil {
 		return err
 	}
@@ -213,16 +215,23 @@ func (s *study) sample(t *task) *diag.Error {
 	if err != nil {
 		return err
 	}
-	for k := range v.Results {
-		v.Results[k].Values = make([]float64, to-from)
-	}
-	flat := s.flatten(w, nominal)
-	done, stopped := s.spread(t, w, flat, from, to)
-	if stopped != nil {
-		if !errors.Is(context.Cause(t.ctx), context.Canceled) || done == 0 {
-			return stopped
+	done := to - from
+	if s.session.computed != nil {
+		if err := s.take(nominal); err != nil {
+			return err
 		}
-		v.Stopped = true
+	} else {
+		for k := range v.Results {
+			v.Results[k].Values = make([]float64, to-from)
+		}
+		var stopped *diag.Error
+		done, stopped = s.spread(t, w, s.flatten(w, nominal), from, to)
+		if stopped != nil {
+			if !errors.Is(context.Cause(t.ctx), context.Canceled) || done == 0 {
+				return stopped
+			}
+			v.Stopped = true
+		}
 	}
 	for k := range v.Results {
 		r := &v.Results[k]
@@ -237,6 +246,32 @@ func (s *study) sample(t *task) *diag.Error {
 		}
 	}
 	s.explainFailures(w)
+	return nil
+}
+
+// take takes values that were computed elsewhere, when they are of this study: its nominal
+// sample must come out the same here.
+func (s *study) take(nominal []float64) *diag.Error {
+	refuse := func(format string, args ...any) *diag.Error {
+		return diag.New(diag.File, format, args...).At(s.name.Span).In(s.source)
+	}
+	values, err := s.session.computed(s.name.Name, s.value)
+	if err != nil {
+		return asError(err, "merge").At(s.name.Span).In(s.source)
+	}
+	if len(values) != len(s.value.Results) {
+		return refuse("the parts have %d results of this study, and it has %d", len(values), len(s.value.Results))
+	}
+	for k := range s.value.Results {
+		r := &s.value.Results[k]
+		if len(values[k]) != s.value.Total() {
+			return refuse("the parts have %d samples of this study, and it has %d", len(values[k]), s.value.Total())
+		}
+		if there := values[k][0]; !(math.Abs(there-nominal[k]) <= 1e-6*math.Abs(nominal[k])+1e-12) && there != nominal[k] {
+			return refuse("the parts are of another design: at the nominal parameters %s is %.6g in them, and %.6g here", r.Text, there, nominal[k])
+		}
+		r.Values = values[k]
+	}
 	return nil
 }
 

@@ -47,7 +47,7 @@ func judgeStudy(s *value.Study, op string, bound value.Value, swapped bool) (*Re
 			missedCorners++
 		}
 	}
-	if worst >= 0 {
+	if worst >= 0 && (out.Met || !holds(op, r.Values[worst], limit)) { // not when only failed samples miss
 		out.Left = r.Number(r.Values[worst])
 	}
 	if !s.IsWhole() {

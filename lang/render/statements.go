@@ -37,7 +37,8 @@ func Statements() []Statement {
 				"Several numbers share their samples: study swing = { damping: …, decay: … } over …, then swing.damping. Fields: smallest and largest, " +
 				"each with value, at and sample; median and quantile(q), of the drawn samples; failed, values, draws, parameters, and influence, " +
 				"the rank correlation of each parameter with the number. A requirement on a study must hold for every sample, corners included, and a " +
-				"failed sample makes it missed. When none of the drawn samples misses, it says how large a part of the distribution can miss all the same, at 95 %."},
+				"failed sample makes it missed. When none of the drawn samples misses, it says how large a part of the distribution can miss all the same, at 95 %. " +
+				"gainwright FILE --part 3/16 computes one share of every study and writes it; gainwright merge PART… joins them and runs the file with them."},
 		{"sensitivity", "sensitivity(EXPRESSION) over MODEL, …",
 			"The relative change of a number for one per cent more of each parameter, at the nominal parameters, strongest first, and what it comes to " +
 				"over the parameter's tolerance. It may be bound to a name; its columns are fields, as in w.change_per_percent[1]. Each change finds the operating point anew. " +
