@@ -11,6 +11,7 @@ import mpmath as mp
 import numpy as np
 import scipy.linalg as sl
 import sympy as sp
+from scipy import stats
 
 mp.mp.dps = 60
 
@@ -147,7 +148,29 @@ def solve(p):
         num, den = sp.fraction(sp.cancel((c * m.adjugate() * b)[0, 0] / m.det(method="berkowitz")))
         num, den = sp.Poly(num, s), sp.Poly(den, s)
         return {"numerator": [str(x / den.LC()) for x in num.all_coeffs()], "denominator": [str(x / den.LC()) for x in den.all_coeffs()]}
+    if kind == "crane study":
+        draws = np.array(p["draws"])
+        values = crane_damping(*draws.T, np.array(p["gain"]))
+        samples = slice(1, p["samples"])
+        drawn = values[: p["samples"]]
+        return {"scipy": [
+            values.tolist(),
+            [float(stats.spearmanr(draws[samples, j], values[samples]).correlation) for j in range(4)],
+            np.quantile(drawn, [0.05, 0.5, 0.95]).tolist(),
+        ]}
     raise ValueError("unknown kind " + kind)
+
+
+def crane_damping(big, small, rope, friction, gain, g=9.81):
+    """The least damping of the trolley crane under a gain, for arrays of parameters: its equations linearised by hand."""
+    a = np.zeros((len(big), 4, 4))
+    a[:, 0, 1] = a[:, 2, 3] = 1
+    a[:, 1, 1], a[:, 1, 2] = -friction / big, small * g / big
+    a[:, 3, 1], a[:, 3, 2] = friction / (rope * big), -(big + small) * g / (rope * big)
+    b = np.zeros((len(big), 4))
+    b[:, 1], b[:, 3] = 1 / big, -1 / (rope * big)
+    poles = np.linalg.eigvals(a - b[:, :, None] * gain)
+    return np.min(-poles.real / np.abs(poles), axis=1)
 
 
 print(json.dumps([solve(p) for p in json.load(sys.stdin)]))
