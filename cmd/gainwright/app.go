@@ -31,6 +31,7 @@ type app struct {
 
 	json      bool
 	part      string // 3/16
+	pictures  pictures
 	digits    int
 	timeLimit time.Duration
 }
@@ -91,6 +92,7 @@ or an interruption, 64 wrong usage.`,
 	root.SetFlagErrorFunc(func(_ *cobra.Command, err error) error { return usageError{message: err.Error()} })
 	root.CompletionOptions.HiddenDefaultCmd = false
 	a.runFlags(root)
+	a.pictures.flags(root)
 	root.Flags().StringVar(&a.part, "part", "", "compute one part of the studies, such as 3/16, and write it for merge")
 	root.AddCommand(a.checkCommand(), a.mergeCommand(), a.tidyCommand(), a.explainCommand(), a.reportCommand(), a.followCommand(), a.versionCommand())
 	return root

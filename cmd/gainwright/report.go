@@ -20,6 +20,7 @@ import (
 
 func (a *app) reportCommand() *cobra.Command {
 	var output string
+	var files pictures
 	c := &cobra.Command{
 		Use:   "report FILE -o OUT.html",
 		Short: "Run a file and write its text, results and figures as one document",
@@ -35,10 +36,14 @@ the file again and lists what differs. The exit status is that of running the fi
 			if err := a.checkFlags(); err != nil {
 				return err
 			}
-			return a.writeReport(args[0], output)
+			if err := files.check(); err != nil {
+				return err
+			}
+			return a.writeReport(args[0], output, &files)
 		},
 	}
 	a.valueFlags(c)
+	files.flags(c)
 	c.Flags().StringVarP(&output, "output", "o", "", "the document to write: .html or .md")
 	return c
 }
@@ -56,7 +61,7 @@ func oneFile(command string) cobra.PositionalArgs {
 	}
 }
 
-func (a *app) writeReport(name, output string) error {
+func (a *app) writeReport(name, output string, files *pictures) error {
 	kind := strings.ToLower(filepath.Ext(output))
 	switch {
 	case output == "":
@@ -76,6 +81,9 @@ func (a *app) writeReport(name, output string) error {
 	}
 	if err := writeDocument(doc, output, kind == ".md"); err != nil {
 		return diag.New(diag.File, "%s cannot be written: %s", output, reason(err))
+	}
+	if err := files.write(doc, d.source.Name); err != nil {
+		return err
 	}
 	a.worsen(status)
 	return nil

@@ -13,6 +13,7 @@ import (
 	"gainwright/lang/diag"
 	"gainwright/lang/eval"
 	"gainwright/lang/render"
+	"gainwright/lang/report"
 	"gainwright/lang/value"
 	"gainwright/stdlib"
 )
@@ -22,10 +23,16 @@ func (a *app) runRoot(_ *cobra.Command, args []string) error {
 	if err := a.checkFlags(); err != nil {
 		return err
 	}
+	if err := a.pictures.check(); err != nil {
+		return err
+	}
 	switch len(args) {
 	case 0:
 		if a.part != "" {
 			return usage("gainwright FILE --part 3/16", "--part needs a file")
+		}
+		if a.pictures.folder != "" {
+			return usage("gainwright FILE --figures DIR", "--figures needs a file")
 		}
 		if a.json {
 			return usage("gainwright --json FILE runs a file, - for standard input", "--json needs a file")
@@ -72,6 +79,14 @@ func (a *app) runDesignWith(d *design, onlyVerdicts bool, computed func(string, 
 	out := bufio.NewWriterSize(a.out, 64<<10)
 	defer out.Flush()
 	emit := a.emitter(d.source, out, progress, onlyVerdicts)
+	var events []eval.Event
+	if a.pictures.folder != "" {
+		show := emit
+		emit = func(e eval.Event) {
+			events = append(events, e)
+			show(e)
+		}
+	}
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt)
 	defer stop()
 	// A second interruption ends the program at once.
@@ -79,7 +94,10 @@ func (a *app) runDesignWith(d *design, onlyVerdicts bool, computed func(string, 
 	outcome := eval.New(options).RunText(ctx, d.source, emit)
 	progress.clear()
 	a.worsen(statusOf(outcome))
-	return nil
+	if a.pictures.folder == "" {
+		return nil
+	}
+	return a.pictures.write(report.New(report.Run{Source: d.source, Events: events}), d.source.Name)
 }
 
 // options are those of a run with everything that the program has.

@@ -39,9 +39,11 @@ type Bound struct {
 // comparison; Because explains a report's truth.
 type Requirement struct {
 	Met            bool
-	WithinRounding bool // the bound lies inside the value's own uncertainty
-	NotJudged      bool // on one part of a divided study
-	Sampled        bool // it was judged for every sample of a study
+	WithinRounding bool         // the bound lies inside the value's own uncertainty
+	NotJudged      bool         // on one part of a divided study
+	Sampled        bool         // it was judged for every sample of a study
+	Study          *value.Study // of one number, when Sampled; Bound is what its samples are held against, in its unit
+	Bound          float64
 	Left, Right    value.Value
 	Op             string
 	Why            string

@@ -23,7 +23,7 @@ func judgeStudy(s *value.Study, op string, bound value.Value, swapped bool) (*Re
 	if swapped {
 		op = turned(op)
 	}
-	out := &Requirement{Op: op, Right: bound, Sampled: true, Met: true}
+	out := &Requirement{Op: op, Right: bound, Sampled: true, Met: true, Study: s, Bound: limit}
 	if b, ok := bound.(value.Boolean); ok && !r.IsTruth {
 		return nil, diag.New(diag.Type, "the study's samples are numbers, and this compares them with %v", b)
 	}

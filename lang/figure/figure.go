@@ -13,7 +13,6 @@ package figure
 
 import (
 	_ "embed"
-	"strings"
 
 	"gainwright/lang/value"
 )
@@ -26,22 +25,27 @@ var Style string
 // Of draws a value; id begins the names of the drawing's elements and must differ
 // between the drawings of a page.
 func Of(v value.Value, id string) (svg string, ok bool) {
+	d, ok := Draw(v)
+	if !ok {
+		return "", false
+	}
+	return d.SVG(id), true
+}
+
+// Draw draws a value, when it has a figure.
+func Draw(v value.Value) (*Drawing, bool) {
 	switch x := value.Force(v).(type) {
 	case *value.Response:
-		return drawResponse(x, id)
+		return drawResponse(x)
+	case *value.Study:
+		return DrawStudy(x, nil)
 	case *value.Report:
 		switch {
 		case isSweep(x):
-			return drawSweep(x, id)
+			return drawSweep(x)
 		case IsPoleMap(x):
-			return drawPoleMap(x, id)
+			return drawPoleMap(x)
 		}
 	}
-	return "", false
-}
-
-// Standalone makes a drawing a file of its own.
-func Standalone(svg string) string {
-	end := strings.IndexByte(svg, '>') + 1
-	return `<?xml version="1.0" encoding="UTF-8"?>` + "\n" + svg[:end] + "<style>" + Style + "</style>" + svg[end:] + "\n"
+	return nil, false
 }

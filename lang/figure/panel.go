@@ -1,11 +1,6 @@
 package figure
 
-import (
-	"fmt"
-	"math"
-	"strconv"
-	"strings"
-)
+import "math"
 
 // the drawing's width, and of a panel the height and the room for texts
 const (
@@ -45,48 +40,12 @@ type mark struct {
 // the classes of the curves in their order: hue and dashes differ
 var curveClasses = [mostCurves]string{"one", "two", "three", "four"}
 
-// canvas collects a drawing.
-type canvas struct {
-	strings.Builder
-}
-
-func (c *canvas) printf(format string, args ...any) { fmt.Fprintf(c, format, args...) }
-
-// short writes a coordinate with one decimal at most.
-func short(x float64) string {
-	s := strconv.FormatFloat(x, 'f', 1, 64)
-	s = strings.TrimSuffix(s, ".0")
-	if s == "-0" {
-		return "0"
-	}
-	return s
-}
-
-func (c *canvas) text(x, y float64, anchor, class, s string) {
-	extra := ""
-	if class != "" {
-		extra = ` class="` + class + `"`
-	}
-	c.printf(`<text x="%s" y="%s" text-anchor="%s"%s>%s</text>`, short(x), short(y), anchor, extra, clean(s))
-}
-
-func (c *canvas) line(class string, x1, y1, x2, y2 float64) {
-	c.printf(`<path class="%s" d="M%s %sL%s %s"/>`, class, short(x1), short(y1), short(x2), short(y2))
-}
-
-// begin opens a drawing with its title and description for those who do not see it.
-func (c *canvas) begin(id string, width, height float64, title, description string) {
-	c.printf(`<svg xmlns="http://www.w3.org/2000/svg" class="figure" role="img" viewBox="0 0 %s %s" width="%s" height="%s" aria-labelledby="%s-title %s-text">`,
-		short(width), short(height), short(width), short(height), clean(id), clean(id))
-	c.printf(`<title id="%s-title">%s</title><desc id="%s-text">%s</desc>`, clean(id), clean(title), clean(id), clean(description))
-}
-
 // stacked draws panels over one horizontal axis.
-func stacked(id, title, description string, panels []*panel, x *axis, xHeading func(power int) string) (string, bool) {
+func stacked(title, description string, panels []*panel, x *axis, xHeading func(power int) string) (*Drawing, bool) {
 	left := leastLeft
 	for _, p := range panels {
 		if !p.scale() {
-			return "", false
+			return nil, false
 		}
 		for _, t := range p.y.ticks {
 			left = math.Max(left, textWidth(t.label)+14)
@@ -95,16 +54,15 @@ func stacked(id, title, description string, panels []*panel, x *axis, xHeading f
 	x.from, x.to = left, pageWidth-rightRoom
 	var c canvas
 	height := float64(len(panels))*(panelHeight+headRoom+panelGap) - panelGap + footRoom
-	c.begin(id, pageWidth, height, title, description)
+	c.begin(pageWidth, height, title, description)
 	top := headRoom
 	for k, p := range panels {
 		p.y.from, p.y.to = top+panelHeight, top
 		c.panel(p, x, k == len(panels)-1)
 		top += panelHeight + headRoom + panelGap
 	}
-	c.text((x.from+x.to)/2, height-6, "middle", "", xHeading(x.power))
-	c.WriteString("</svg>")
-	return c.String(), true
+	c.text((x.from+x.to)/2, height-6, middle, "", xHeading(x.power))
+	return &c.Drawing, true
 }
 
 // scale chooses the panel's vertical axis.
@@ -163,14 +121,14 @@ func (c *canvas) panel(p *panel, x *axis, last bool) {
 	for _, v := range x.fine {
 		c.line("grid", x.place(v), bottom, x.place(v), bottom-4)
 	}
-	end := -1.0
+	taken := -1.0
 	for _, t := range x.ticks {
 		at := x.place(t.at)
 		c.line("grid", at, bottom, at, top)
 		half := textWidth(t.label) / 2
-		if last && at-half > end {
-			c.text(at, bottom+16, "middle", "", t.label)
-			end = at + half + 4
+		if last && at-half > taken {
+			c.text(at, bottom+16, middle, "", t.label)
+			taken = at + half + 4
 		}
 	}
 	for _, t := range p.y.ticks {
@@ -180,7 +138,7 @@ func (c *canvas) panel(p *panel, x *axis, last bool) {
 			class = "axis"
 		}
 		c.line(class, x.from, at, x.to, at)
-		c.text(x.from-7, at+4, "end", "", t.label)
+		c.text(x.from-7, at+4, end, "", t.label)
 	}
 	for _, level := range p.levels {
 		if level >= p.y.low && level <= p.y.high {
@@ -194,7 +152,7 @@ func (c *canvas) panel(p *panel, x *axis, last bool) {
 				c.line("limit", x.from, p.y.place(*limit), x.to, p.y.place(*limit))
 			}
 		}
-		c.printf(`<path class="curve %s" d="%s"/>`, curveClasses[k%mostCurves], trace(one, x, p.y))
+		c.add(shape{class: "curve " + curveClasses[k%mostCurves], lines: trace(one, x, p.y)})
 	}
 	for _, m := range p.marks {
 		c.mark(m, x, p.y)
@@ -207,64 +165,57 @@ func (c *canvas) head(p *panel, x *axis) {
 	head := p.heading(p.y.power)
 	room := x.to - x.from
 	if len(p.curves) < 2 {
-		c.text(at, top, "start", "", shortened(head, room))
+		c.text(at, top, start, "", shortened(head, room))
 		return
 	}
 	if head != "" {
 		head = shortened(head, room/3)
-		c.text(at, top, "start", "", head)
+		c.text(at, top, start, "", head)
 		at += textWidth(head) + 14
 	}
 	each := (x.to - at) / float64(len(p.curves))
 	for k, one := range p.curves {
 		name := shortened(one.name, each-40)
 		c.line("curve "+curveClasses[k], at, top-4, at+24, top-4)
-		c.text(at+29, top, "start", "", name)
+		c.text(at+29, top, start, "", name)
 		at += math.Min(each, textWidth(name)+46)
 	}
 }
 
 func (c *canvas) mark(m mark, x, y *axis) {
 	px, py := x.place(m.x), y.place(m.y)
-	c.printf(`<circle class="mark" cx="%s" cy="%s" r="3.5"/>`, short(px), short(py))
+	c.circle("mark", px, py, 3.5)
 	if m.text == "" {
 		return
 	}
-	anchor, at := "start", px+8
+	side, at := start, px+8
 	if px+8+textWidth(m.text) > x.to {
-		anchor, at = "end", px-8
+		side, at = end, px-8
 	}
 	up := py - 8
 	if up < y.to+12 {
 		up = py + 16
 	}
-	c.text(at, up, anchor, "", m.text)
+	c.text(at, up, side, "", m.text)
 }
 
-// trace writes a curve as a path of relative steps. Where many points fall on one place
-// of the horizontal axis, the first, the lowest, the highest and the last are kept, so
+// trace gives a curve as lines, a new one behind every gap. Where many points fall on one
+// place of the horizontal axis, the first, the lowest, the highest and the last are kept, so
 // that nothing of the curve's extent is lost.
-func trace(one curve, x, y *axis) string {
-	var b strings.Builder
-	var penX, penY int // in tenths, as written
+func trace(one curve, x, y *axis) [][]place {
+	var lines [][]place
 	down := false
 	put := func(px, py int) {
-		switch {
-		case !down:
-			b.WriteString("M" + tenths(px) + " " + tenths(py) + "l")
+		p := place{px, py}
+		if !down {
+			lines = append(lines, []place{p})
 			down = true
-		case px == penX && py == penY:
 			return
-		default:
-			dx, dy := tenths(px-penX), tenths(py-penY)
-			b.WriteString(dx)
-			if !strings.HasPrefix(dy, "-") {
-				b.WriteByte(' ')
-			}
-			b.WriteString(dy)
-			b.WriteByte(' ')
 		}
-		penX, penY = px, py
+		line := &lines[len(lines)-1]
+		if p != (*line)[len(*line)-1] {
+			*line = append(*line, p)
+		}
 	}
 	column := newColumn(put)
 	started := false // the curve has a point since its last gap
@@ -283,24 +234,7 @@ func trace(one curve, x, y *axis) string {
 		column.add(px, py)
 	}
 	column.flush()
-	return strings.TrimRight(strings.TrimSuffix(b.String(), "l"), " ")
-}
-
-// far beyond any drawing, and within what an int holds
-const farAway = 1e7
-
-func tenth(x float64) int { return int(math.Round(math.Max(-farAway, math.Min(farAway, x*10)))) }
-
-// tenths writes a whole number of tenths.
-func tenths(n int) string {
-	sign := ""
-	if n < 0 {
-		sign, n = "-", -n
-	}
-	if n%10 == 0 {
-		return sign + strconv.Itoa(n/10)
-	}
-	return sign + strconv.Itoa(n/10) + "." + strconv.Itoa(n%10)
+	return lines
 }
 
 // column gathers the points of one place.

@@ -69,10 +69,10 @@ const mapHeight = 330.0
 
 // drawPoleMap draws poles as crosses, zeros as circles and wanted poles as squares, with
 // equal scales on both axes, and shades where no pole may lie.
-func drawPoleMap(r *value.Report, id string) (string, bool) {
+func drawPoleMap(r *value.Report) (*Drawing, bool) {
 	all := spots(r)
 	if len(all) == 0 {
-		return "", false
+		return nil, false
 	}
 	_, sampled := fieldNumber(r, "every")
 	drawn, far := reach(all, sampled)
@@ -86,25 +86,20 @@ func drawPoleMap(r *value.Report, id string) (string, bool) {
 	x, y := mapAxes(left, right, up)
 	var c canvas
 	height := headRoom + mapHeight + footRoom
-	c.begin(id, pageWidth, height, "Pole map", describeMap(all, sampled))
-	c.printf(`<clipPath id="%s-field"><rect x="%s" y="%s" width="%s" height="%s"/></clipPath>`, clean(id), short(x.from), short(y.to), short(x.to-x.from), short(y.from-y.to))
-	c.printf(`<g clip-path="url(#%s-field)">`, clean(id))
-	c.forbidden(r, x, y, sampled)
-	c.WriteString("</g>")
+	c.begin(pageWidth, height, "Pole map", describeMap(all, sampled))
+	c.inside(x.from, y.to, x.to-x.from, y.from-y.to, func() { c.forbidden(r, x, y, sampled) })
 	c.mapGrid(x, y, sampled)
 	if sampled {
-		c.printf(`<ellipse class="axis" cx="%s" cy="%s" rx="%s" ry="%s"/>`, short(x.place(0)), short(y.place(0)),
-			short(x.place(1)-x.place(0)), short(y.place(0)-y.place(1)))
+		c.ellipse("axis", x.place(0), y.place(0), x.place(1)-x.place(0), y.place(0)-y.place(1))
 	}
 	for _, s := range drawn {
 		c.spot(s.what, x.place(s.re), y.place(s.im))
 	}
 	c.mapKey(drawn, x)
 	if len(far) > 0 {
-		c.text(x.from+6, y.from-8, "start", "quiet", shortened("not drawn, farther away: "+placesText(far), x.to-x.from-12))
+		c.text(x.from+6, y.from-8, start, "quiet", shortened("not drawn, farther away: "+placesText(far), x.to-x.from-12))
 	}
-	c.WriteString("</svg>")
-	return c.String(), true
+	return &c.Drawing, true
 }
 
 // farZero is how many times farther than any pole a zero may lie to be drawn.
@@ -159,7 +154,7 @@ func (c *canvas) mapGrid(x, y *axis, sampled bool) {
 			class = "axis"
 		}
 		c.line(class, x.place(t.at), y.from, x.place(t.at), y.to)
-		c.text(x.place(t.at), y.from+16, "middle", "", t.label)
+		c.text(x.place(t.at), y.from+16, middle, "", t.label)
 	}
 	for _, t := range y.ticks {
 		class := "grid"
@@ -167,10 +162,10 @@ func (c *canvas) mapGrid(x, y *axis, sampled bool) {
 			class = "axis"
 		}
 		c.line(class, x.from, y.place(t.at), x.to, y.place(t.at))
-		c.text(x.from-7, y.place(t.at)+4, "end", "", t.label)
+		c.text(x.from-7, y.place(t.at)+4, end, "", t.label)
 	}
-	c.text((x.from+x.to)/2, y.from+footRoom-6, "middle", "", heading("real part", unit, x.power))
-	c.text(x.from, y.to-9, "start", "", heading("imaginary part", unit, y.power))
+	c.text((x.from+x.to)/2, y.from+footRoom-6, middle, "", heading("real part", unit, x.power))
+	c.text(x.from, y.to-9, start, "", heading("imaginary part", unit, y.power))
 }
 
 // forbidden shades where no pole may lie: outside the stable part, and outside what is required.
@@ -180,7 +175,7 @@ func (c *canvas) forbidden(r *value.Report, x, y *axis, sampled bool) {
 	}
 	decay, _ := fieldNumber(r, "decay")
 	edge := x.place(-decay)
-	c.printf(`<rect class="shade" x="%s" y="%s" width="%s" height="%s"/>`, short(edge), short(y.to), short(math.Max(0, x.to-edge)), short(y.from-y.to))
+	c.rectangle("shade", edge, y.to, math.Max(0, x.to-edge), y.from-y.to)
 	damping, ok := fieldNumber(r, "damping")
 	if !ok || damping <= 0 || damping >= 1 {
 		return
@@ -189,8 +184,7 @@ func (c *canvas) forbidden(r *value.Report, x, y *axis, sampled bool) {
 	reach := 2 * math.Max(math.Abs(x.low), y.high) / damping
 	slope := math.Sqrt(1 - damping*damping)
 	for _, side := range []float64{1, -1} {
-		c.printf(`<path class="shade" d="M%s %sL%s %sL%s %sZ"/>`, short(x.place(0)), short(y.place(0)),
-			short(x.place(-damping*reach)), short(y.place(side*slope*reach)), short(x.place(0)), short(y.place(side*reach)))
+		c.polygon("shade", x.place(0), y.place(0), x.place(-damping*reach), y.place(side*slope*reach), x.place(0), y.place(side*reach))
 		c.line("limit", x.place(0), y.place(0), x.place(-damping*reach), y.place(side*slope*reach))
 	}
 }
@@ -198,11 +192,11 @@ func (c *canvas) forbidden(r *value.Report, x, y *axis, sampled bool) {
 func (c *canvas) spot(what string, px, py float64) {
 	switch what {
 	case "pole":
-		c.printf(`<path class="pole" d="M%s %sl10 10m0-10l-10 10"/>`, short(px-5), short(py-5))
+		c.add(shape{class: "pole", lines: [][]place{{at(px-5, py-5), at(px+5, py+5)}, {at(px+5, py-5), at(px-5, py+5)}}})
 	case "zero":
-		c.printf(`<circle class="zero" cx="%s" cy="%s" r="5"/>`, short(px), short(py))
+		c.circle("zero", px, py, 5)
 	default:
-		c.printf(`<rect class="wanted" x="%s" y="%s" width="16" height="16"/>`, short(px-8), short(py-8))
+		c.rectangle("wanted", px-8, py-8, 16, 16)
 	}
 }
 
@@ -218,7 +212,7 @@ func (c *canvas) mapKey(all []spot, x *axis) {
 			continue
 		}
 		w := textWidth(what)
-		c.text(at-w, headRoom-9, "start", "", what)
+		c.text(at-w, headRoom-9, start, "", what)
 		c.spot(what, at-w-13, headRoom-13)
 		at -= w + 34
 	}

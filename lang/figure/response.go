@@ -13,10 +13,10 @@ import (
 const mostPanels = 8
 
 // drawResponse draws outputs, inputs and states over time, those of one unit together.
-func drawResponse(r *value.Response, id string) (string, bool) {
+func drawResponse(r *value.Response) (*Drawing, bool) {
 	n := len(r.Instants)
 	if n == 0 {
-		return "", false
+		return nil, false
 	}
 	var panels []*panel
 	units := map[*panel]string{}
@@ -53,7 +53,7 @@ func drawResponse(r *value.Response, id string) (string, bool) {
 		}
 	}
 	if len(panels) == 0 {
-		return "", false
+		return nil, false
 	}
 	last := r.Instants[n-1]
 	x := linear(r.Instants[0], last, 8, false)
@@ -61,7 +61,7 @@ func drawResponse(r *value.Response, id string) (string, bool) {
 	if title == "" {
 		title = "response"
 	}
-	return stacked(id, title, describeResponse(r, panels, left), panels, x, func(power int) string { return heading("time", "s", power) })
+	return stacked(title, describeResponse(r, panels, left), panels, x, func(power int) string { return heading("time", "s", power) })
 }
 
 // placeFor finds the panel of a unit that has room for a further curve.

@@ -36,12 +36,12 @@ func realAt(row []value.Value, j int) float64 {
 }
 
 // drawSweep draws gain and phase over the frequency.
-func drawSweep(r *value.Report, id string) (string, bool) {
+func drawSweep(r *value.Report) (*Drawing, bool) {
 	frequencies := make([]float64, len(r.Rows))
 	for i, row := range r.Rows {
 		frequencies[i] = realAt(row, 0)
 		if !(frequencies[i] > 0) || math.IsInf(frequencies[i], 0) || i > 0 && frequencies[i] <= frequencies[i-1] {
-			return "", false
+			return nil, false
 		}
 	}
 	gain := &panel{heading: func(power int) string { return heading("gain", "dB", power) }, levels: []float64{0}}
@@ -64,7 +64,7 @@ func drawSweep(r *value.Report, id string) (string, bool) {
 		description += fmt.Sprintf(" The first %d of %d channels are drawn.", mostCurves, channels)
 	}
 	x := logarithmic(frequencies[0], frequencies[len(frequencies)-1])
-	return stacked(id, "Frequency response", description, []*panel{gain, phase}, x, func(power int) string { return heading("frequency", "rad/s", power) })
+	return stacked("Frequency response", description, []*panel{gain, phase}, x, func(power int) string { return heading("frequency", "rad/s", power) })
 }
 
 // more crossings than this are not told in words

@@ -162,11 +162,7 @@ func (m *markdownWriter) result(r Result, prefix string) {
 		if r.Shown.Figure == "" {
 			b.WriteString(fence("text", render.Text(r.Event.Text, r.Event.Shown.Value, r.Event.Shown.In, o)))
 		}
-		if r.Shown.Figure != "" {
-			name := fmt.Sprintf("%s-figure-%d.svg", m.stem, len(m.figures)+1)
-			m.figures = append(m.figures, File{name, []byte(figure.Standalone(r.Shown.Figure))})
-			fmt.Fprintf(&b, "\n![%s](%s)\n", escaped(r.Event.Text), strings.ReplaceAll(name, " ", "%20"))
-		}
+		m.figure(&b, r.Event.Text, r.Shown.Figure)
 	case r.Verdict != nil:
 		fmt.Fprintf(&b, "**%s** %s\n", r.Verdict.Word, escaped(r.Verdict.Text))
 		lines := append([]string{}, r.Verdict.Below...)
@@ -176,6 +172,7 @@ func (m *markdownWriter) result(r Result, prefix string) {
 		for _, l := range append(lines, r.Verdict.Notes...) {
 			fmt.Fprintf(&b, "\n%s\n", escaped(l))
 		}
+		m.figure(&b, r.Event.Text, r.Figure)
 	case r.Failure != "":
 		b.WriteString("**error**\n\n" + fence("text", r.Failure))
 	default:
@@ -184,6 +181,16 @@ func (m *markdownWriter) result(r Result, prefix string) {
 	for line := range strings.Lines(b.String() + "\n") {
 		m.out.WriteString(strings.TrimRight(prefix+strings.TrimSuffix(line, "\n"), " ") + "\n")
 	}
+}
+
+// figure puts a drawing beside the document, and a link to it into the text.
+func (m *markdownWriter) figure(b *strings.Builder, text, svg string) {
+	if svg == "" {
+		return
+	}
+	name := fmt.Sprintf("%s-figure-%d.svg", m.stem, len(m.figures)+1)
+	m.figures = append(m.figures, File{name, []byte(figure.Standalone(svg))})
+	fmt.Fprintf(b, "\n![%s](%s)\n", escaped(text), strings.ReplaceAll(name, " ", "%20"))
 }
 
 // notebook copies the notebook and puts the results below each block.

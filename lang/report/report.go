@@ -24,6 +24,7 @@ import (
 
 	"gainwright/lang/diag"
 	"gainwright/lang/eval"
+	"gainwright/lang/figure"
 	"gainwright/lang/render"
 	"gainwright/lang/syntax"
 )
@@ -50,13 +51,23 @@ type Document struct {
 	results  [][]Result // by statement
 	loose    []Result   // what belongs to no statement
 	reached  int        // statements before this one were run
-	figures  int
+	figures  []Figure
 	prepared []byte // the body, once it is laid out
 }
+
+// Figure is a drawing of the document with the statement that it belongs to.
+type Figure struct {
+	Text    string
+	Drawing *figure.Drawing
+}
+
+// Figures lists the drawings in reading order.
+func (d *Document) Figures() []Figure { return d.figures }
 
 // Result is one thing the run said.
 type Result struct {
 	Event   eval.Event
+	Figure  string // a drawing as SVG
 	Shown   *render.Sheet
 	Verdict *render.Verdict
 	Failure string // an error as the terminal shows it
@@ -267,11 +278,14 @@ func (d *Document) result(e eval.Event) (Result, bool) {
 	switch {
 	case e.Shown != nil:
 		sheet := render.SheetOf(e.Text, e.Shown.Value, e.Shown.In, d.run.Options)
-		sheet.Figure = d.draw(e.Shown.Value)
+		sheet.Figure = d.draw(e.Text, e.Shown.Value)
 		r.Shown = &sheet
 	case e.Requirement != nil, e.Claim != nil:
 		v := render.VerdictOf(e, d.run.Options)
 		r.Verdict = &v
+		if e.Requirement != nil && e.Requirement.Study != nil && !d.showsStudy(e.Requirement.Study) {
+			r.Figure = d.draw(e.Text, e.Requirement.Study)
+		}
 	case e.Error != nil:
 		shown := *e.Error
 		if shown.Source != nil {

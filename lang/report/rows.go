@@ -5,8 +5,6 @@ import (
 	"strings"
 
 	"gainwright/lang/diag"
-	"gainwright/lang/figure"
-	"gainwright/lang/value"
 )
 
 // row is a piece of the text with what the run said about it; or prose.
@@ -257,16 +255,6 @@ func closing(s string, from int) int {
 		}
 	}
 	return len(s)
-}
-
-// draw gives the drawing of a value, with names of its own on the page.
-func (d *Document) draw(v value.Value) string {
-	svg, ok := figure.Of(v, "figure-"+itoa(d.figures+1))
-	if !ok {
-		return ""
-	}
-	d.figures++
-	return svg
 }
 
 // sourceBetween joins the parts of a block's lines that lie in [from, to).
