@@ -42,6 +42,8 @@ type outputFigures struct {
 	overshoot, overshootAt, undershoot value.Value
 	settling, rise                     value.Value
 	hidden                             string
+	trace                              int
+	band                               *value.Band // nil without a final value
 }
 
 const noFigure = value.Text("none")
@@ -87,7 +89,7 @@ func seconds(t float64) string { return strconv.FormatFloat(t, 'g', 5, 64) + " s
 // outputFigures follows one output.
 func (c *course) outputFigures(r *value.Response, i int, within float64) (*outputFigures, error) {
 	trace := &r.Signals[i]
-	f := &outputFigures{name: trace.Name, overshoot: noFigure, overshootAt: noFigure, undershoot: noFigure, settling: noFigure, rise: noFigure}
+	f := &outputFigures{name: trace.Name, trace: i, overshoot: noFigure, overshootAt: noFigure, undershoot: noFigure, settling: noFigure, rise: noFigure}
 	start := dot(c.q.c.row(i), c.q.start)
 	if c.wholeMotion() {
 		return f, c.wholeFigures(f, trace, i, start, within)
@@ -151,6 +153,7 @@ func (f *outputFigures) fill(final value.Number, start, within float64, scan fun
 			return err
 		}
 		f.settling = r.settling(relative, within, until)
+		f.band = r.band(end, within*peak)
 		return nil
 	}
 	r := newReading(start, way, within)
@@ -165,6 +168,10 @@ func (f *outputFigures) fill(final value.Number, start, within float64, scan fun
 		f.undershoot = percent(under, relative)
 	}
 	f.settling = r.settling(relative, within, until)
+	f.band = r.band(end, within*math.Abs(way))
+	if f.overshootAt != noFigure {
+		f.band.PeakAt, f.band.Peak = r.topAt, start+way*r.top
+	}
 	if !math.IsNaN(r.highAt) && !math.IsNaN(r.lowAt) {
 		f.rise = timeOf(r.highAt-r.lowAt, relative)
 	}
@@ -193,6 +200,15 @@ func (r *reading) settling(relative, within, until float64) value.Value {
 		return value.Text(fmt.Sprintf("not within %.4g %% by %s", 100*within, seconds(until)))
 	}
 	return timeOf(r.settledAt, relative/within*0.1)
+}
+
+// band is what the signal settles into.
+func (r *reading) band(final, half float64) *value.Band {
+	b := &value.Band{Low: final - half, High: final + half, From: r.settledAt, PeakAt: math.NaN(), Peak: math.NaN()}
+	if r.outside {
+		b.From = math.Inf(1)
+	}
+	return b
 }
 
 func quantity(n value.Number, u value.Unit) value.Value {
@@ -230,7 +246,12 @@ func (c *course) report(r *value.Response, all []*outputFigures, within value.Nu
 	band := value.Quantity{Magnitude: hundred.(value.Number), Unit: value.Percent()}
 	riseBand := &value.List{Items: []value.Value{
 		value.Quantity{Magnitude: value.Int(10), Unit: value.Percent()}, value.Quantity{Magnitude: value.Int(90), Unit: value.Percent()}}}
-	out := &value.Report{Title: "figures of the " + r.Title}
+	basis := *r
+	basis.Signals = append([]value.Trace{}, r.Signals...)
+	for _, f := range all {
+		basis.Signals[f.trace].Band = f.band
+	}
+	out := &value.Report{Title: "figures of the " + r.Title, Basis: &basis}
 	for _, f := range all {
 		if f.hidden != "" {
 			out.Notes = append(out.Notes, f.hidden)

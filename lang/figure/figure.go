@@ -45,6 +45,8 @@ func Draw(v value.Value) (*Drawing, bool) {
 			return drawSweep(x)
 		case IsPoleMap(x):
 			return drawPoleMap(x)
+		case x.Basis != nil:
+			return drawResponse(x.Basis)
 		}
 	}
 	return nil, false

@@ -292,3 +292,21 @@ func TestTerminalKeepsItsWidth(t *testing.T) {
 func TestStandaloneParses(t *testing.T) {
 	parsed(t, figure.Standalone(draw(t, sweep())))
 }
+
+// TestFiguresShadeTheBand: what figures were read off is drawn with the band and its marks.
+func TestFiguresShadeTheBand(t *testing.T) {
+	basis := swing(200, "x")
+	basis.Signals[0].Band = &value.Band{Low: 0.98, High: 1.02, From: 3.5, PeakAt: 0.1, Peak: 1.9}
+	elements, texts := parsed(t, draw(t, &value.Report{Title: "figures of the response", Basis: basis}))
+	if elements["rect band"] != 1 || elements["circle mark"] != 2 {
+		t.Errorf("elements %v", elements)
+	}
+	if all := strings.Join(texts, "|"); !strings.Contains(all, "settled at 3.5 s") || !strings.Contains(all, "1.9|") {
+		t.Errorf("the marks say %s", all)
+	}
+	basis.Signals[0].Band = &value.Band{Low: 0.98, High: 1.02, From: math.Inf(1), PeakAt: math.NaN(), Peak: math.NaN()}
+	elements, _ = parsed(t, draw(t, &value.Report{Title: "figures of the response", Basis: basis}))
+	if elements["rect band"] != 1 || elements["circle mark"] != 0 {
+		t.Errorf("without settling: elements %v", elements)
+	}
+}

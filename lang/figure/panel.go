@@ -1,6 +1,10 @@
 package figure
 
-import "math"
+import (
+	"math"
+
+	"gainwright/lang/value"
+)
 
 // the drawing's width, and of a panel the height and the room for texts
 const (
@@ -29,6 +33,7 @@ type panel struct {
 	levels  []float64 // horizontal lines that mean something
 	step    float64   // wanted distance of ticks, 0 for any round one
 	marks   []mark
+	bands   []value.Band
 	y       *axis
 }
 
@@ -95,6 +100,11 @@ func (p *panel) scale() bool {
 			see(level)
 		}
 	}
+	for _, b := range p.bands { // room for the words at the farthest point
+		if b.Peak >= high {
+			see(b.Peak + 0.12*(high-low))
+		}
+	}
 	if high-low < 1e-9*math.Max(math.Abs(low), math.Abs(high)) {
 		// What differs by rounding alone is a constant.
 		low = (low + high) / 2
@@ -140,6 +150,12 @@ func (c *canvas) panel(p *panel, x *axis, last bool) {
 		c.line(class, x.from, at, x.to, at)
 		c.text(x.from-7, at+4, end, "", t.label)
 	}
+	for _, b := range p.bands {
+		low, high := math.Max(b.Low, p.y.low), math.Min(b.High, p.y.high)
+		if low < high {
+			c.rectangle("band", x.from, p.y.place(high), x.to-x.from, p.y.place(low)-p.y.place(high))
+		}
+	}
 	for _, level := range p.levels {
 		if level >= p.y.low && level <= p.y.high {
 			c.line("axis", x.from, p.y.place(level), x.to, p.y.place(level))
@@ -183,6 +199,9 @@ func (c *canvas) head(p *panel, x *axis) {
 }
 
 func (c *canvas) mark(m mark, x, y *axis) {
+	if m.x < x.low || m.x > x.high || m.y < y.low || m.y > y.high {
+		return
+	}
 	px, py := x.place(m.x), y.place(m.y)
 	c.circle("mark", px, py, 3.5)
 	if m.text == "" {

@@ -43,6 +43,7 @@ func drawResponse(r *value.Response) (*Drawing, bool) {
 				units[p] = role + " " + s.Unit.Text
 			}
 			p.curves = append(p.curves, one)
+			p.band(s.Band)
 			unit, role := s.Unit.Text, role
 			p.heading = func(power int) string {
 				if len(p.curves) == 1 {
@@ -72,6 +73,33 @@ func placeFor(panels []*panel, units map[*panel]string, unit string) *panel {
 		}
 	}
 	return nil
+}
+
+// band shades what a signal settles into, and marks its overshoot.
+func (p *panel) band(b *value.Band) {
+	if b == nil {
+		return
+	}
+	p.bands = append(p.bands, *b)
+	if !math.IsNaN(b.PeakAt) {
+		p.marks = append(p.marks, mark{b.PeakAt, b.Peak, brief(b.Peak)})
+	}
+	if !math.IsInf(b.From, 0) && b.From > 0 {
+		p.marks = append(p.marks, mark{b.From, nearest(b, p.curves[len(p.curves)-1]), "settled at " + brief2(b.From) + " s"})
+	}
+}
+
+// nearest is the edge of the band that the curve comes in by.
+func nearest(b *value.Band, c curve) float64 {
+	for i := len(c.x) - 1; i >= 0; i-- {
+		if c.x[i] < b.From && !math.IsNaN(c.y[i]) {
+			if c.y[i] > (b.Low+b.High)/2 {
+				return b.High
+			}
+			return b.Low
+		}
+	}
+	return b.Low
 }
 
 // jumps tells whether a signal stands still between few levels, as a held one does.

@@ -30,6 +30,15 @@ type Trace struct {
 	High   *float64
 	Held   bool    // constant from an instant to the next
 	Err    float64 // absolute error estimate of the values
+	Band   *Band   // what figures were read against; nil before
+}
+
+// Band is what a signal settles into, and its farthest overshoot; all in the signal's unit
+// and s.
+type Band struct {
+	Low, High    float64
+	From         float64 // when it has settled; +Inf when it has not
+	PeakAt, Peak float64 // NaN without an overshoot
 }
 
 // LimitStay is a time an input spent at a limit. To is +Inf when it is there at the end.

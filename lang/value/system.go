@@ -77,6 +77,7 @@ type Report struct {
 	Columns []string  // column heads, units in square brackets: "time constant [s]"
 	Rows    [][]Value // a nil cell is blank; a Text cell is shown without quotes
 	Holds   *bool     // the report's truth in require; nil when it has none
+	Basis   *Response // what the report was read off, to be drawn beside it; nil for nothing
 	Notes   []string
 }
 
