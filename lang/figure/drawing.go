@@ -46,7 +46,10 @@ const (
 )
 
 // canvas collects a drawing.
-type canvas struct{ Drawing }
+type canvas struct {
+	Drawing
+	written []written // the texts of marks, which must not stand on each other
+}
 
 func (c *canvas) begin(width, height float64, title, description string) {
 	c.width, c.height, c.Title, c.Description = width, height, title, description

@@ -207,15 +207,51 @@ func (c *canvas) mark(m mark, x, y *axis) {
 	if m.text == "" {
 		return
 	}
-	side, at := start, px+8
-	if px+8+textWidth(m.text) > x.to {
-		side, at = end, px-8
+	// The first place beside the point where no other word stands.
+	width := textWidth(m.text)
+	best := -1
+	var free words
+	for k, w := range [...]words{{px + 8, py - 8, start}, {px + 8, py + 16, start}, {px - 8, py - 8, end}, {px - 8, py + 16, end}} {
+		from := w.from(width)
+		if from < x.from || from+width > x.to || w.y < y.to+11 || w.y > y.from-3 {
+			continue
+		}
+		if best < 0 || !c.crosses(w, width) && c.crosses(free, width) {
+			best, free = k, w
+		}
 	}
-	up := py - 8
-	if up < y.to+12 {
-		up = py + 16
+	if best < 0 {
+		return
 	}
+	c.written = append(c.written, written{free.from(width), free.y, width})
+	at, up, side := free.x, free.y, free.side
 	c.text(at, up, side, "", m.text)
+}
+
+// words is a place for a mark's text.
+type words struct {
+	x, y float64
+	side anchor
+}
+
+func (w words) from(width float64) float64 {
+	if w.side == end {
+		return w.x - width
+	}
+	return w.x
+}
+
+// written is a mark's text that stands already.
+type written struct{ from, y, width float64 }
+
+func (c *canvas) crosses(w words, width float64) bool {
+	from := w.from(width)
+	for _, o := range c.written {
+		if from < o.from+o.width+4 && o.from < from+width+4 && math.Abs(w.y-o.y) < letter+1 {
+			return true
+		}
+	}
+	return false
 }
 
 // trace gives a curve as lines, a new one behind every gap. Where many points fall on one

@@ -18,7 +18,7 @@ func layStudy(s *value.Study, o Options) laid {
 	}
 	r := &value.Report{Title: studyTitle(s)}
 	if len(s.Results) == 1 {
-		r.Fields = spreadFields(s)
+		r.Fields = spreadFields(s, o)
 		if t, ok := s.Field("influence"); ok && len(s.Parameters) > 1 {
 			if influence, ok := force(t).(*value.Report); ok {
 				r.Columns = append([]string{}, influence.Columns...)
@@ -65,7 +65,7 @@ func studyTitle(s *value.Study) string {
 }
 
 // spreadFields are the extremes with their parameters, the middle, and what failed.
-func spreadFields(s *value.Study) []value.Named {
+func spreadFields(s *value.Study, o Options) []value.Named {
 	var out []value.Named
 	for _, name := range []string{"smallest", "median", "largest"} {
 		v, ok := s.Field(name)
@@ -81,8 +81,11 @@ func spreadFields(s *value.Study) []value.Named {
 		out = append(out, value.Named{Name: name, Value: number})
 		if at, ok := e.Field("at"); ok {
 			where, _ := e.Field("sample")
-			fields := append([]value.Named{}, at.(*value.Report).Fields...)
-			out = append(out, value.Named{Name: "  at " + strings.TrimPrefix(fmt.Sprint(where), "sample "), Value: &value.Report{Fields: fields}})
+			var parts []string
+			for _, f := range at.(*value.Report).Fields {
+				parts = append(parts, f.Name+" "+Inline(f.Value, o))
+			}
+			out = append(out, value.Named{Name: "  at " + strings.TrimPrefix(fmt.Sprint(where), "sample "), Value: value.Text(strings.Join(parts, ", "))})
 		}
 	}
 	failed, _ := s.Field("failed")

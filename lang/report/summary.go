@@ -191,6 +191,17 @@ func holdingDigits(v value.Value, depth int) (digits float64, ok bool) {
 		}
 	case *value.Matrix:
 		take(x.Digits())
+	case *value.Polynomial:
+		for _, c := range x.Coefficients() {
+			take(c.Digits())
+		}
+	case *value.Transfer:
+		for _, row := range x.Entries {
+			for _, e := range row {
+				from(e.Num)
+				from(e.Den)
+			}
+		}
 	case *value.Gain:
 		from(x.Values)
 	case *value.Plant:
