@@ -103,3 +103,24 @@ func notesOf(e eval.Event) []string {
 	}
 	return r.Notes
 }
+
+// TestASampleTimeThatIsTakenIsSaid: a function of z without one is taken at 1 s where that matters.
+func TestASampleTimeThatIsTakenIsSaid(t *testing.T) {
+	for text, said := range map[string]bool{
+		"margins(0.1/(z - 0.5)).degrees": true, "slowest_decay(0.1/(z - 0.5))": true, "poles(0.1/(z - 0.5))": false,
+		"slowest_decay(timed(0.1/(z - 0.5), every: 2 s))": false, "slowest_decay(1/(s + 2))": false,
+	} {
+		notes := 0
+		eval.New(eval.Options{Builtins: builtins.Table(), Library: stdlib.Files}).RunText(context.Background(), diag.NewSource("untimed", text), func(e eval.Event) {
+			if e.Error != nil {
+				t.Error(e.Error.Render())
+			}
+			if strings.Contains(e.Note, "1 s is taken") {
+				notes++
+			}
+		})
+		if (notes == 1) != said {
+			t.Errorf("%s: %d notes", text, notes)
+		}
+	}
+}

@@ -144,6 +144,9 @@ func (s *Session) callBuiltin(f *frame, b *value.Builtin, site *callSite, args [
 		if err != nil {
 			return nil, asError(err, b.Name).At(p.span)
 		}
+		if (b.Family == "frequency" || b.Family == "response") && untimed(p.value, v) {
+			call.Note("no sample time is given, and 1 s is taken; timed(G, every: 5 ms) states one")
+		}
 		call.Args[p.param.Name] = v
 		spans[p.param.Name] = p.span
 	}
@@ -160,6 +163,18 @@ func (s *Session) callBuiltin(f *frame, b *value.Builtin, site *callSite, args [
 		return nil, asError(err, b.Name).At(site.callee)
 	}
 	return v, nil
+}
+
+// untimed tells whether a transfer function of z without a sample time became a plant.
+func untimed(before, after value.Value) bool {
+	_, isPlant := after.(*value.Plant)
+	switch x := before.(type) {
+	case *value.Transfer:
+		return isPlant && x.Variable == "z" && x.Every == nil
+	case *value.Polynomial:
+		return isPlant && x.Variable == "z" && x.Degree() > 0
+	}
+	return false
 }
 
 // newCall makes what a built-in is given.

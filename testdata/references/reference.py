@@ -11,7 +11,7 @@ import mpmath as mp
 import numpy as np
 import scipy.linalg as sl
 import sympy as sp
-from scipy import stats
+from scipy import integrate, stats
 
 mp.mp.dps = 60
 
@@ -158,7 +158,83 @@ def solve(p):
             [float(stats.spearmanr(draws[samples, j], values[samples]).correlation) for j in range(4)],
             np.quantile(drawn, [0.05, 0.5, 0.95]).tolist(),
         ]}
+    if kind == "motion":  # x' = A x + B u(t), y = C x by an adaptive integrator
+        a, b, c = (npm(p[k]) for k in "ABC")
+        drive = DRIVES[p["drive"]]
+        run = integrate.solve_ivp(lambda t, x: a @ x + b[:, 0] * drive(t), (0, p["times"][-1]), np.array(p["start"], float),
+                                  method="DOP853", rtol=2e-13, atol=1e-15, t_eval=p["times"])
+        return {"scipy": (c @ run.y).tolist()}
+    if kind == "held law":  # a sampled observer and gain with a limit on a continuous plant, moved by matrix exponentials
+        return {"scipy": held_law(p)}
+    if kind == "own equations":
+        run = integrate.solve_ivp(EQUATIONS[p["equations"]], (0, p["times"][-1]), np.array(p["start"], float),
+                                  method="DOP853", rtol=2e-13, atol=1e-15, t_eval=p["times"], max_step=0.01)
+        return {"scipy": run.y.tolist()}
+    if kind == "margins":  # crossings of a loop num/den, by mpmath on its frequency response
+        return {"scipy": margins(p)}
     raise ValueError("unknown kind " + kind)
+
+
+DRIVES = {"step": lambda t: 1.0, "ramp": lambda t: t, "sine": lambda t: np.sin(3 * t) * np.exp(-t / 4), "none": lambda t: 0.0}
+
+
+def pendulum(t, x, torque=0.0):
+    return [x[1], torque - 9.81 * np.sin(x[0]) - 0.3 * x[1]]
+
+
+EQUATIONS = {
+    "pendulum": pendulum,
+    "pushed pendulum": lambda t, x: pendulum(t, x, 4.0),
+    # u = -K x within 6 on both sides
+    "limited pendulum": lambda t, x: pendulum(t, x, max(-6.0, min(6.0, -12 * x[0] - 5 * x[1]))),
+    # two vessels that run into each other, by the square root of their levels' difference
+    "vessels": lambda t, x: [0.02 * (1 - np.sqrt(max(x[0], 0.0))), 0.02 * np.sqrt(max(x[0], 0.0)) - 0.03 * x[1]],
+}
+
+
+def held_law(p):
+    a, b, c, k, l = (npm(p[x]) for x in "ABCKL")
+    every, limit, times = p["every"], p["limit"], p["times"]
+    n = a.shape[0]
+    whole = sl.expm(np.block([[a, b], [np.zeros((1, n + 1))]]) * every)
+    ad, bd = whole[:n, :n], whole[:n, n:]
+    x, guess = np.array(p["start"], float).reshape(-1, 1), np.zeros((n, 1))
+    samples, out = int(round(times[-1] / every)), []
+    at = 0
+    for sample in range(samples + 1):
+        u = float(np.clip((-k @ guess)[0, 0], -limit, limit))
+        while at < len(times) and times[at] < (sample + 1) * every - 1e-9:
+            part = sl.expm(np.block([[a, b], [np.zeros((1, n + 1))]]) * (times[at] - sample * every))
+            out.append((c @ (part[:n, :n] @ x + part[:n, n:] * u))[0, 0])
+            at += 1
+        guess = ad @ guess + bd * u + l @ (c @ x - c @ guess)
+        x = ad @ x + bd * u
+    return [out]
+
+
+def margins(p):
+    """The frequencies at which |L| = 1 and at which L is real and negative, from a fine scan refined by mpmath."""
+    num, den = ([mp.mpf(exact(x).numerator) / exact(x).denominator for x in p[k]] for k in ("num", "den"))
+    delay = mp.mpf(exact(p.get("delay", 0)).numerator) / exact(p.get("delay", 0)).denominator
+    every = p.get("every")
+
+    def loop(w):
+        z = mp.mpc(0, w) if every is None else mp.exp(mp.mpc(0, w) * mp.mpf(every))
+        return mp.polyval(num, z) / mp.polyval(den, z) * mp.exp(mp.mpc(0, -w) * delay)
+
+    top = p["to"]
+    grid = [mp.mpf(p["from"]) * (mp.mpf(top) / p["from"]) ** (mp.mpf(i) / 4000) for i in range(4001)]
+    values = [loop(w) for w in grid]
+    found = [[], []]
+    for i in range(1, len(grid)):
+        u, v = values[i - 1], values[i]
+        if (abs(u) - 1) * (abs(v) - 1) < 0:
+            w = mp.findroot(lambda w: abs(loop(w)) - 1, (grid[i - 1], grid[i]), solver="anderson", tol=1e-50, maxsteps=200)
+            found[0] += [float(w), float(mp.arg(-loop(w)) * 180 / mp.pi)]
+        if mp.im(u) * mp.im(v) < 0 and mp.re(u) < 0 and mp.re(v) < 0:
+            w = mp.findroot(lambda w: mp.im(loop(w)), (grid[i - 1], grid[i]), solver="anderson", tol=1e-50, maxsteps=200)
+            found[1] += [float(w), float(1 / abs(loop(w)))]
+    return found
 
 
 def crane_damping(big, small, rope, friction, gain, g=9.81):
