@@ -60,3 +60,47 @@ func BenchmarkExactGain(b *testing.B) {
 		})
 	}
 }
+
+// BenchmarkResponse is a step response of 10 000 points for a plant of six states.
+func BenchmarkResponse(b *testing.B) {
+	benchmarkCall(b, sixStates, `response(P, to: "step", until: 40 s, points: 10000)`)
+}
+
+// BenchmarkSweep is a frequency response of 500 points for a plant of 200 states.
+func BenchmarkSweep(b *testing.B) {
+	var rows []string
+	for i := range 100 {
+		row := make([]string, 200)
+		for j := range row {
+			row[j] = "0"
+		}
+		row[2*i+1] = "1"
+		rows = append(rows, "["+strings.Join(row, ",")+"]")
+		for j := range row {
+			row[j] = fmt.Sprintf("%.4f", 0.002*float64((i*7+j*13)%11-5))
+		}
+		row[2*i], row[2*i+1] = fmt.Sprintf("-%d", i+1), fmt.Sprintf("-0.%02d", i%90+1)
+		rows = append(rows, "["+strings.Join(row, ",")+"]")
+	}
+	text := "A = " + strings.ReplaceAll("["+strings.Join(rows, ",\n")+"]", "0.0000", "0.0001") + "\nP = plant(A, row(identity(200), 2)ᵀ, row(identity(200), 1))\n"
+	benchmarkCall(b, text, "sweep(P, from: 0.1 rad/s, to: 30 rad/s, points: 500)")
+}
+
+const sixStates = "P = plant([[0,1,0,0,0,0],[-2.1,-0.3,1.1,0,0,0],[0,0,0,1,0,0],[1.1,0,-3.3,-0.2,1.2,0],[0,0,0,0,0,1],[0,0,1.4,0,-1.7,-0.25]], [[0],[1],[0],[0],[0],[0.5]], [[1,0,0,0,0,0]])\n"
+
+// benchmarkCall times one statement in a session that ran the text before.
+func benchmarkCall(b *testing.B, text, call string) {
+	b.Helper()
+	session := eval.New(eval.Options{Builtins: builtins.Table(), Library: stdlib.Files, Interactive: true})
+	run := func(text string) {
+		session.RunText(context.Background(), diag.NewSource("bench", text), func(e eval.Event) {
+			if e.Error != nil {
+				b.Fatal(e.Error.Render())
+			}
+		})
+	}
+	run(text)
+	for b.Loop() {
+		run("r = " + call)
+	}
+}
