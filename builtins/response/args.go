@@ -77,7 +77,7 @@ func readRequest(c *value.Call) (*request, error) {
 		}
 	}
 	if largest(q.x0) > 0 || largest(q.u0) > 0 || largest(q.y0) > 0 {
-		q.notes = append(q.notes, "signals are counted from the operating point, which P.operating_point lists")
+		q.notes = append(q.notes, "signals are counted from the operating point, which the plant lists as .operating_point")
 	}
 	return q, nil
 }

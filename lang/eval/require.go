@@ -154,6 +154,11 @@ func inUnitOf(v, other value.Value, typed syntax.Expr) value.Value {
 	if study, ok := other.(*value.Study); ok && len(study.Results) == 1 {
 		q.Unit, isQuantity = study.Results[0].Unit, !study.Results[0].Unit.IsNone()
 	}
+	if isNumber && isQuantity && q.Unit.IsPercent() { // parts shown in per cent are plain numbers
+		if hundred, err := value.Multiply(n, value.Int(100)); err == nil {
+			return value.Quantity{Magnitude: hundred.(value.Number), Unit: q.Unit}
+		}
+	}
 	if !isLiteral || literal.Unit != nil || !isNumber || !isQuantity || !q.Unit.IsCoherent() {
 		return v
 	}

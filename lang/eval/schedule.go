@@ -232,7 +232,7 @@ func (s *schedule) evaluate(parameter float64) (value.Value, *diag.Error) {
 }
 
 func (s *schedule) valueText(parameter float64) string {
-	text := fmt.Sprintf("%s %.6g", s.text, parameter)
+	text := s.text + " " + fourDigits(parameter)
 	if !s.unit.IsNone() {
 		text += " " + s.unit.Text
 	}

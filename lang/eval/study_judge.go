@@ -3,6 +3,7 @@ package eval
 import (
 	"fmt"
 	"math"
+	"strconv"
 	"strings"
 
 	"gainwright/lang/diag"
@@ -151,7 +152,17 @@ func placeText(s *value.Study, sample int) string {
 	s.Draw(sample, draw)
 	parts := make([]string, len(draw))
 	for k, name := range s.ParameterNames() {
-		parts[k] = strings.TrimSpace(fmt.Sprintf("%s %.4g %s", name, draw[k], s.Parameters[k].Unit.Text))
+		parts[k] = strings.TrimSpace(name + " " + fourDigits(draw[k]) + " " + s.Parameters[k].Unit.Text)
 	}
 	return strings.Join(parts, ", ") + " (" + s.SampleName(sample) + ")"
+}
+
+// fourDigits writes a number with four significant digits, without a power of ten where
+// that is short.
+func fourDigits(x float64) string {
+	if size := math.Abs(x); size < 1e-4 || size >= 1e7 {
+		return fmt.Sprintf("%.4g", x)
+	}
+	rounded, _ := strconv.ParseFloat(fmt.Sprintf("%.3e", x), 64)
+	return strconv.FormatFloat(rounded, 'f', -1, 64)
 }
