@@ -4,6 +4,7 @@ import (
 	"context"
 	"math"
 	"os"
+	"slices"
 	"strings"
 	"testing"
 
@@ -77,6 +78,41 @@ func TestStudyBesideNumPy(t *testing.T) {
 		got, err := swing.Quantile(value.Float(q))
 		if err != nil || math.Abs(value.Force(got).(value.Number).Float64()-want[2][j]) > 1e-10 {
 			t.Errorf("quantile %g: %v %v, NumPy gives %.15g", q, got, err, want[2][j])
+		}
+	}
+}
+
+// TestAxisStudyBesideNumPy gives NumPy the draws and corners of scripts/hydraulic_axis.gain,
+// whose rest, units and valve curve are worked out by hand there.
+func TestAxisStudyBesideNumPy(t *testing.T) {
+	text, err := os.ReadFile("../scripts/hydraulic_axis.gain")
+	if err != nil {
+		t.Fatal(err)
+	}
+	session := studied(t, string(text), true)
+	hold := studyOf(t, session, "hold")
+	draws := make([][]float64, hold.Total())
+	for k := range draws {
+		draws[k] = make([]float64, len(hold.Parameters))
+		hold.Draw(k, draws[k])
+	}
+	order := []int{}
+	for _, name := range []string{"M", "E", "V", "ps", "Q", "leak", "d"} {
+		order = append(order, slices.Index(hold.ParameterNames(), name))
+	}
+	for k, draw := range draws {
+		sorted := make([]float64, len(order))
+		for i, j := range order {
+			sorted[i] = draw[j]
+		}
+		draws[k] = sorted
+	}
+	k, _ := session.Lookup("K")
+	gain, _ := value.Force(k).(*value.Gain).Values.Floats()
+	want := ask(t, []problem{{"kind": "axis study", "draws": draws, "gain": gain}})[0].Scipy[0]
+	for i, v := range hold.Results[0].Values {
+		if math.Abs(v-want[i]) > 1e-9 {
+			t.Fatalf("%s: %.15g, NumPy gives %.15g", hold.SampleName(i), v, want[i])
 		}
 	}
 }

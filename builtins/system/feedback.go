@@ -20,7 +20,7 @@ var feedbackBuiltins = []*value.Builtin{
 		},
 		Result:  "plant",
 		Summary: "the closed loop under u = −K·x (+ N·r), or under u = −H·y",
-		Doc: "With a gain K: x' = (A − B·K)·x + B·u and y = (C − D·K)·x + D·u; with N as well the input is r through B·N. " +
+		Doc: "With a gain K, taken as the numbers it holds: x' = (A − B·K)·x + B·u and y = (C − D·K)·x + D·u; with N as well the input is r through B·N. " +
 			"With a system H: the loop with negative feedback u = v − H·y, whose input is v at the plant's input. " +
 			"A loop through both direct terms is solved when I + D·D_H is invertible. " +
 			"A plant made by with_integrators keeps its references as further inputs, so that the closed loop can be driven by r.",
@@ -125,7 +125,18 @@ func gainMatrix(p *value.Plant, v value.Value, param string) (*value.Matrix, err
 	if r != m || col != n {
 		return nil, value.Errf(diag.Shape, param, "the gain is %d×%d; a plant with %d inputs and %d states needs %d×%d", r, col, m, n, m, n)
 	}
-	return k, nil
+	return asHeld(k), nil
+}
+
+// asHeld is a gain as the numbers that it holds: what was uncertain about how it was found
+// is no uncertainty of the loop that these numbers close.
+func asHeld(gain *value.Matrix) *value.Matrix {
+	if gain.IsExact() || gain.Err == 0 {
+		return gain
+	}
+	held := *gain
+	held.Err = 0
+	return &held
 }
 
 // PlantSize gives the numbers of states and inputs.
@@ -176,9 +187,9 @@ func ReferenceEnters(p *value.Plant) *value.Matrix {
 
 func gainValues(v value.Value) *value.Matrix {
 	if g, ok := v.(*value.Gain); ok {
-		return g.Values
+		return asHeld(g.Values)
 	}
-	return v.(*value.Matrix)
+	return asHeld(v.(*value.Matrix))
 }
 
 func referenceSignals(reference value.Value, n int) []value.Signal {

@@ -11,7 +11,7 @@ import mpmath as mp
 import numpy as np
 import scipy.linalg as sl
 import sympy as sp
-from scipy import integrate, stats
+from scipy import integrate, optimize, stats
 
 mp.mp.dps = 60
 
@@ -172,7 +172,28 @@ def solve(p):
         return {"scipy": run.y.tolist()}
     if kind == "margins":  # crossings of a loop num/den, by mpmath on its frequency response
         return {"scipy": margins(p)}
+    if kind == "axis study":
+        return {"scipy": [[axis_damping(*draw, np.array(p["gain"])) for draw in p["draws"]]]}
     raise ValueError("unknown kind " + kind)
+
+
+def axis_damping(mass, modulus, volume, supply, flow, leak, friction, gain):
+    """The least damping of the hydraulic axis of scripts/hydraulic_axis.gain under a gain, linearised by hand, its rest by brentq.
+    Parameters in kg, bar, L, bar, L/min, L/(min*bar), N*s/m; the states are in mm, mm/s, bar and 1."""
+    area, load, lag, litre = 20e-4, 4000, 8e-3, 1e-3
+    volume, flow, leak = volume * litre, flow * litre / 60, leak * litre / 60
+    pressure = load / area / 1e5
+    drop = np.sqrt(1 - pressure / supply)
+    opening = optimize.brentq(lambda y: flow * 0.75 * y * drop - leak * pressure, -0.2, 0.2, xtol=1e-15)
+    k = 4 * modulus / volume
+    a = np.array([
+        [0, 1, 0, 0],
+        [0, -friction / mass, area * 1e5 / mass * 1e3, 0],
+        [0, -k * area * 1e-3, -k * (leak + flow * 0.75 * opening / (2 * supply * drop)), k * flow * 0.75 * drop],
+        [0, 0, 0, -1 / lag],
+    ])
+    poles = np.linalg.eigvals(a - np.outer([0, 0, 0, 1 / lag], gain))
+    return float(np.min(-poles.real / np.abs(poles)))
 
 
 DRIVES = {"step": lambda t: 1.0, "ramp": lambda t: t, "sine": lambda t: np.sin(3 * t) * np.exp(-t / 4), "none": lambda t: 0.0}
