@@ -14,6 +14,7 @@ import (
 	"github.com/yuin/goldmark"
 	"github.com/yuin/goldmark/ast"
 	"github.com/yuin/goldmark/extension"
+	east "github.com/yuin/goldmark/extension/ast"
 	"github.com/yuin/goldmark/renderer"
 	"github.com/yuin/goldmark/text"
 	order "github.com/yuin/goldmark/util"
@@ -44,6 +45,7 @@ func (p *prose) RegisterFuncs(r renderer.NodeRendererFuncRegisterer) {
 	r.Register(ast.KindHTMLBlock, p.rawBlock)
 	r.Register(ast.KindRawHTML, p.rawInline)
 	r.Register(ast.KindImage, p.picture)
+	r.Register(east.KindTableHeader, p.tableHead)
 	if p.document != nil {
 		r.Register(ast.KindFencedCodeBlock, p.fenced)
 	}
@@ -63,6 +65,30 @@ func (p *prose) rawBlock(w order.BufWriter, source []byte, n ast.Node, entering 
 		b.Write(block.ClosureLine.Value(source))
 	}
 	_, err := w.WriteString("<pre>" + html.EscapeString(strings.TrimRight(b.String(), "\n")) + "</pre>\n")
+	return ast.WalkContinue, err
+}
+
+// tableHead leaves out a head without a word, which Markdown's tables must have.
+func (p *prose) tableHead(w order.BufWriter, source []byte, n ast.Node, entering bool) (ast.WalkStatus, error) {
+	empty := true
+	for cell := n.FirstChild(); cell != nil; cell = cell.NextSibling() {
+		empty = empty && cell.FirstChild() == nil
+	}
+	switch {
+	case entering && empty:
+		return ast.WalkSkipChildren, nil
+	case entering:
+		_, err := w.WriteString("<thead>\n<tr>\n")
+		return ast.WalkContinue, err
+	}
+	text := "</tr>\n</thead>\n"
+	if empty {
+		text = ""
+	}
+	if n.NextSibling() != nil {
+		text += "<tbody>\n"
+	}
+	_, err := w.WriteString(text)
 	return ast.WalkContinue, err
 }
 
