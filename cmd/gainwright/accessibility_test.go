@@ -14,6 +14,9 @@ import (
 // practice may be violated. AXE_CORE names its file axe.min.js; without it the test is
 // skipped, unless references are required.
 func TestReportsAreAccessible(t *testing.T) {
+	if testing.Short() {
+		t.Skip("long")
+	}
 	name := os.Getenv("AXE_CORE")
 	if name == "" {
 		if os.Getenv("REQUIRE_REFERENCES") == "1" {
