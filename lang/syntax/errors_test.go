@@ -27,6 +27,7 @@ var errorCases = []struct {
 	{"diagram d { e = r", 1, 18, "} is missing at the end", "{ of line 1, column 11 is not closed"},
 	{"[1, 2)", 1, 6, "] is missing before )", "[ of line 1, column 1 is not closed"},
 	{"(1, 2]", 1, 3, "a comma stands only between entries, arguments and the parts of some statements", "a list is written [a, b]"},
+	{"x = 1,5", 1, 6, "a comma stands only between entries, arguments and the parts of some statements", "decimals are written with a point: 1.5"},
 	{"f(1}", 1, 4, ") is missing before }", "( of line 1, column 2 is not closed"},
 	{"if a { 1 )", 1, 10, "} is missing before )", "{ of line 1, column 6 is not closed"},
 	{")", 1, 1, ") closes nothing", ""},

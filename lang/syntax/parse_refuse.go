@@ -209,7 +209,11 @@ func (p *parser) unexpected(t token) {
 	case ";":
 		p.refuseSemicolon(t)
 	case ",":
-		p.failHere(t, "a list is written [a, b]", "a comma stands only between entries, arguments and the parts of some statements")
+		help := "a list is written [a, b]"
+		if text := p.scan.text; t.span.Start > 0 && t.span.End < len(text) && isDigit(text[t.span.Start-1]) && isDigit(text[t.span.End]) {
+			help = "decimals are written with a point: 1.5"
+		}
+		p.failHere(t, help, "a comma stands only between entries, arguments and the parts of some statements")
 	case ":":
 		p.failHere(t, "a range of subscripts is A[1..3, 2]; a named argument f(name: value)", ": has no meaning here")
 	case "..":
@@ -250,3 +254,5 @@ func (p *parser) refuseSemicolon(t token) {
 	}
 	p.failHere(t, "a statement has a line of its own; values are shown unless they are bound to a name", "; has no meaning here")
 }
+
+func isDigit(c byte) bool { return '0' <= c && c <= '9' }
