@@ -140,5 +140,8 @@ func (w *words) hint(word string) string {
 	if near := value.Nearest(word, w.session.Candidates("")); near != "" {
 		return "is " + near + " meant?"
 	}
+	if names := render.Mentions(w.table, word); len(names) > 0 {
+		return "it occurs under " + strings.Join(names, ", ")
+	}
 	return "gainwright explain lists all words"
 }

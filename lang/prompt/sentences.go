@@ -146,6 +146,8 @@ func (t *talk) explain(word string) {
 	err := diag.New(diag.Name, "there is no word %s", word)
 	if near := value.Nearest(word, t.Session.Candidates("")); near != "" {
 		err = err.WithHelp("is %s meant?", near)
+	} else if names := render.Mentions(t.Table, word); len(names) > 0 {
+		err = err.WithHelp("it occurs under %s", strings.Join(names, ", "))
 	}
 	t.fail(err)
 }

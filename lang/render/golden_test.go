@@ -245,3 +245,16 @@ func compareGolden(t *testing.T, name, got string) {
 		t.Errorf("%s differs (-want +got); -update rewrites it\n%s", name, d)
 	}
 }
+
+func TestMentionsFindWordsOfTheTrade(t *testing.T) {
+	table := []*value.Builtin{
+		{Name: "sweep", Summary: "the frequency response", Doc: "gain and phase"},
+		{Name: "response_of", Summary: "how it runs in time"},
+		{Name: "margins", Doc: "of the response at a crossing", Params: []value.Param{{Name: "loop", Doc: "cut anywhere"}}},
+	}
+	for text, want := range map[string]string{"Response": "response_of sweep margins", "cut": "margins", "x": "", "zebra": ""} {
+		if got := strings.Join(Mentions(table, text), " "); got != want {
+			t.Errorf("%s: %q, want %q", text, got, want)
+		}
+	}
+}
