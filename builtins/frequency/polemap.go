@@ -12,7 +12,7 @@ var poleMapBuiltins = []*value.Builtin{
 		Params: []value.Param{
 			{Name: "plant", Shape: value.ASystem, Doc: "a plant or transfer function"},
 			{Name: "wanted", Shape: value.PoleList, Named: true, Optional: true, Default: "none", Doc: "poles that were asked for, shown beside those reached"},
-			{Name: "damping", Shape: value.AReal, Named: true, Optional: true, Default: "none", Doc: "smallest damping ratio that is required, between 0 and 1"},
+			{Name: "damping", Shape: value.AReal, Named: true, Optional: true, Default: "none", Doc: "smallest damping ratio that is required, between 0 and 1, of a sampled pole that of ln z/T"},
 			{Name: "decay", Shape: value.AReal, Named: true, Optional: true, Default: "none", Doc: "smallest decay rate −Re p that is required, in 1/s"},
 		},
 		Result:  "report, a row a pole, a zero or a wanted pole",
@@ -20,7 +20,7 @@ var poleMapBuiltins = []*value.Builtin{
 		Doc: "Fields: poles, zeros (the transmission zeros), and what was asked for: wanted, damping, decay. " +
 			"In a document it is drawn: poles as crosses, zeros as circles, wanted poles as squares, the region where no pole may lie shaded; of a sampled plant in the plane of z with the unit circle.",
 		Examples: []value.Example{{Input: "pole_map((s + 3)/(s^2 + 3*s + 2)).zeros", Output: "= [-3]"}},
-		Errors:   []string{"a damping outside 0 … 1", "a required region of a sampled plant"},
+		Errors:   []string{"a damping outside 0 … 1"},
 		Source:   "definition", SeeAlso: []string{"poles", "transmission_zeros", "least_damping"},
 		Func: poleMap,
 	},
@@ -58,10 +58,6 @@ func poleMap(c *value.Call) (value.Value, error) {
 		r.Fields = append(r.Fields, value.Named{Name: "wanted", Value: c.List("wanted")})
 	}
 	if p.Every != nil {
-		if c.Has("damping") || c.Has("decay") {
-			return nil, value.Errf(diag.Numerical, "plant", "the required region is one of the plane of s, and the plant is sampled").
-				WithHelp("leave damping and decay out, or require least_damping(…) and slowest_decay(…)")
-		}
 		r.Fields = append(r.Fields, value.Named{Name: "every", Value: *p.Every})
 	}
 	if c.Has("damping") {

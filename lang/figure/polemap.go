@@ -170,10 +170,11 @@ func (c *canvas) mapGrid(x, y *axis, sampled bool) {
 
 // forbidden shades where no pole may lie: outside the stable part, and outside what is required.
 func (c *canvas) forbidden(r *value.Report, x, y *axis, sampled bool) {
+	decay, _ := fieldNumber(r, "decay")
 	if sampled {
+		c.forbiddenSampled(r, decay, x, y)
 		return
 	}
-	decay, _ := fieldNumber(r, "decay")
 	edge := x.place(-decay)
 	c.rectangle("shade", edge, y.to, math.Max(0, x.to-edge), y.from-y.to)
 	damping, ok := fieldNumber(r, "damping")
@@ -186,6 +187,27 @@ func (c *canvas) forbidden(r *value.Report, x, y *axis, sampled bool) {
 	for _, side := range []float64{1, -1} {
 		c.polygon("shade", x.place(0), y.place(0), x.place(-damping*reach), y.place(side*slope*reach), x.place(0), y.place(side*reach))
 		c.line("limit", x.place(0), y.place(0), x.place(-damping*reach), y.place(side*slope*reach))
+	}
+}
+
+// forbiddenSampled shades all but the places exp(p·T) of poles p that decay as required.
+func (c *canvas) forbiddenSampled(r *value.Report, decay float64, x, y *axis) {
+	every, _ := fieldNumber(r, "every")
+	damping, ok := fieldNumber(r, "damping")
+	if !ok || damping < 0 || damping >= 1 {
+		damping = 0
+	}
+	const pieces = 180
+	var allowed []place
+	for k := range 2 * pieces { // clockwise on paper, against the field's edge
+		angle := math.Pi * float64(k-pieces) / pieces
+		radius := math.Min(math.Exp(-decay*every), math.Exp(-damping/math.Sqrt(1-damping*damping)*math.Abs(angle)))
+		allowed = append(allowed, at(x.place(radius*math.Cos(angle)), y.place(radius*math.Sin(angle))))
+	}
+	edge := []place{at(x.from, y.to), at(x.to, y.to), at(x.to, y.from), at(x.from, y.from)}
+	c.add(shape{class: "shade", lines: [][]place{edge, allowed}, closed: true})
+	if damping > 0 || decay > 0 {
+		c.add(shape{class: "limit", lines: [][]place{append(allowed, allowed[0])}})
 	}
 }
 

@@ -52,9 +52,7 @@ func (p *painter) shape(s *shape) {
 	i := inkOf(s.class)
 	switch s.kind {
 	case path:
-		for _, line := range s.lines {
-			p.path(line, s.closed, i)
-		}
+		p.path(s, i)
 	case label:
 		p.label(s, i)
 	case oval:
@@ -95,17 +93,26 @@ func (p *painter) closedLine(c contour, i ink) {
 	}
 }
 
-func (p *painter) path(line []place, closed bool, i ink) {
-	c := make(contour, len(line))
-	for k, at := range line {
-		c[k] = [2]float64{pixels(at.x), pixels(at.y)}
+func (p *painter) path(s *shape, i ink) {
+	var lines []contour
+	for _, line := range s.lines {
+		c := make(contour, len(line), len(line)+1)
+		for k, at := range line {
+			c[k] = [2]float64{pixels(at.x), pixels(at.y)}
+		}
+		lines = append(lines, c)
 	}
-	if closed {
-		p.closedLine(c, i)
-		return
+	if s.closed && i.fill != "" { // together: a line that turns the other way is a hole
+		p.outline = append(p.outline, lines...)
+		p.fill(i.fill, i.opacity)
 	}
-	if i.stroke != "" {
-		p.stroke(c, i)
+	for _, c := range lines {
+		if s.closed {
+			c = append(c, c[0])
+		}
+		if i.stroke != "" {
+			p.stroke(c, i)
+		}
 	}
 }
 
