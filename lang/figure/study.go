@@ -69,6 +69,7 @@ type histogram struct {
 	name, unit  string
 	first, step float64
 	counts      []int
+	drawn       []float64
 	corners     []float64
 	limits      []Limit
 	low, high   float64
@@ -82,19 +83,18 @@ func newHistogram(s *value.Study, r *value.StudyResult, limits []Limit) *histogr
 		h.name = r.Text
 	}
 	low, high := math.Inf(1), math.Inf(-1)
-	var drawn []float64
 	for k, v := range r.Values {
 		if math.IsNaN(v) || math.IsInf(v, 0) {
 			continue
 		}
 		low, high = math.Min(low, v), math.Max(high, v)
 		if s.First+k < s.Samples {
-			drawn = append(drawn, v)
+			h.drawn = append(h.drawn, v)
 		} else {
 			h.corners = append(h.corners, v)
 		}
 	}
-	if len(drawn) == 0 {
+	if len(h.drawn) == 0 {
 		return nil
 	}
 	h.low, h.high = low, high
@@ -111,7 +111,7 @@ func newHistogram(s *value.Study, r *value.StudyResult, limits []Limit) *histogr
 	h.first = math.Floor(h.x.low/h.step) * h.step
 	h.counts = make([]int, int(math.Ceil((h.x.high-h.first)/h.step))+1)
 	most := 0
-	for _, v := range drawn {
+	for _, v := range h.drawn {
 		k := max(0, min(len(h.counts)-1, int((v-h.first)/h.step)))
 		h.counts[k]++
 		most = max(most, h.counts[k])

@@ -2,6 +2,7 @@ package figure
 
 import (
 	"math"
+	"strconv"
 	"strings"
 
 	"gainwright/lang/value"
@@ -14,9 +15,21 @@ const (
 	mostOnTerminal = 4
 )
 
-// Terminal draws a response in lines of at most width cells: each of the first outputs (or
-// inputs, or states where there are no others) with its range, in braille dots.
-func Terminal(r *value.Response, width int) []string {
+// Terminal draws a response, or the samples of a study's number, in braille dots within
+// width cells; nil for any other value.
+func Terminal(v value.Value, width int) []string {
+	switch x := v.(type) {
+	case *value.Response:
+		return responseLines(x, width)
+	case *value.Study:
+		return studyLines(x, width)
+	}
+	return nil
+}
+
+// responseLines draws each of the first outputs (or inputs, or states where there are no
+// others) with its range.
+func responseLines(r *value.Response, width int) []string {
 	n := len(r.Instants)
 	if n < 2 || width < leastTerminal {
 		return nil
@@ -148,4 +161,50 @@ func (d *dots) rows() []string {
 		out[i] = b.String()
 	}
 	return out
+}
+
+// the height of a histogram in a terminal, in lines, and its greatest width in cells
+const (
+	histogramLines = 3
+	widestBars     = 48
+)
+
+// studyLines draws how often the drawn samples lie where, from the smallest to the largest.
+func studyLines(s *value.Study, width int) []string {
+	if len(s.Results) != 1 || s.Results[0].IsTruth || width < leastTerminal {
+		return nil
+	}
+	h := newHistogram(s, &s.Results[0], nil)
+	if h == nil || h.low == h.high {
+		return nil
+	}
+	cells := min(widestBars, width-labelCells-1)
+	d := newDots(cells, histogramLines)
+	counts, most := make([]int, 2*cells), 0
+	for _, v := range h.drawn {
+		k := min(len(counts)-1, int((v-h.low)/(h.high-h.low)*float64(len(counts))))
+		counts[k]++
+		most = max(most, counts[k])
+	}
+	for x, n := range counts {
+		for y := range int(math.Ceil(float64(n) / float64(most) * 4 * histogramLines)) {
+			d.set(x, 4*histogramLines-1-y)
+		}
+	}
+	var lines []string
+	for i, row := range d.rows() {
+		label := ""
+		if i == 0 {
+			label = strconv.Itoa(most)
+		} else if i == histogramLines-1 {
+			label = "0"
+		}
+		lines = append(lines, padded(label)+" "+row)
+	}
+	first, last := brief3(h.low), brief3(h.high)
+	if h.unit != "" {
+		last += " " + h.unit
+	}
+	gap := max(1, cells-len([]rune(first))-len([]rune(last)))
+	return append(lines, strings.Repeat(" ", labelCells+1)+first+strings.Repeat(" ", gap)+last)
 }

@@ -264,3 +264,23 @@ func TestUnknownLettersAreBoxes(t *testing.T) {
 		}
 	}
 }
+
+// TestStudyOnATerminal: the columns of the histogram stand as high as their samples are many.
+func TestStudyOnATerminal(t *testing.T) {
+	s := &value.Study{Samples: 100, Results: []value.StudyResult{{Unit: value.Unit{Text: "1/s"}}}}
+	for k := range 100 {
+		v := 1.0 // 70 of 100 lie at the lower end
+		if k >= 70 {
+			v = 1 + float64(k-69)/30
+		}
+		s.Results[0].Values = append(s.Results[0].Values, v)
+	}
+	lines := Terminal(s, 60)
+	if len(lines) != histogramLines+1 || !strings.HasPrefix(strings.TrimSpace(lines[0]), "70 ⡇") || !strings.HasSuffix(lines[3], "2 1/s") {
+		t.Errorf("%s", strings.Join(lines, "\n"))
+	}
+	s.Results[0].Values = make([]float64, 100)
+	if Terminal(s, 60) != nil {
+		t.Error("samples that are all equal have a drawing")
+	}
+}

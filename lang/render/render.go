@@ -43,8 +43,8 @@ type Options struct {
 	InFull bool // no abridging of large matrices
 	// Fractions shows every exact number as a fraction.
 	Fractions bool
-	// Drawing draws a response in lines of at most width cells; nil for none.
-	Drawing func(r *value.Response, width int) []string
+	// Drawing draws a response or a study in lines of at most width cells; nil for none.
+	Drawing func(v value.Value, width int) []string
 }
 
 func (o Options) width() int {

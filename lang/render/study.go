@@ -46,7 +46,13 @@ func layStudy(s *value.Study, o Options) laid {
 				s.Done(), s.SampleName(result.FirstFailed), result.Failure)))
 		}
 	}
-	return layReport(r, o)
+	l := layReport(r, o)
+	if o.Drawing != nil {
+		if drawing := o.Drawing(s, o.width()-2); len(drawing) > 0 {
+			l.lines = append(append(l.lines, ""), drawing...)
+		}
+	}
+	return l
 }
 
 func studyTitle(s *value.Study) string {
@@ -85,7 +91,7 @@ func spreadFields(s *value.Study, o Options) []value.Named {
 			for _, f := range at.(*value.Report).Fields {
 				parts = append(parts, f.Name+" "+Inline(f.Value, o))
 			}
-			out = append(out, value.Named{Name: "  at " + strings.TrimPrefix(fmt.Sprint(where), "sample "), Value: value.Text(strings.Join(parts, ", "))})
+			out = append(out, value.Named{Name: "  at " + fmt.Sprint(where), Value: value.Text(strings.Join(parts, ", "))})
 		}
 	}
 	failed, _ := s.Field("failed")
