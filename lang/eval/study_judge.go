@@ -75,7 +75,8 @@ func boundIn(bound value.Value, r *value.StudyResult) (float64, error) {
 	}
 	if q, ok := bound.(value.Quantity); ok && r.Unit.IsNone() {
 		if !q.Unit.Dim.IsPlain() {
-			return 0, diag.New(diag.Unit, "the study is a plain number, and the bound is in %s", q.Unit.Text)
+			return 0, diag.New(diag.Unit, "the study is a plain number, and the bound is in %s", q.Unit.Text).
+				WithHelp("poles and rates of decay are plain numbers, in 1/s")
 		}
 		n, err := q.SI()
 		return n.Float64(), err

@@ -60,6 +60,9 @@ func unitClash(what string, a, b Unit) error {
 	}
 	e := diag.New(diag.Unit, "%s: the left side %s, the right side %s", what, side(a), side(b))
 	if a.Text == "" && a.Dim.IsPlain() || b.Text == "" && b.Dim.IsPlain() {
+		if perSecond := (Dimension{2: -1}); a.Dim == perSecond || b.Dim == perSecond {
+			return e.WithHelp("poles and rates of decay are plain numbers, in 1/s: leave the unit of the other side out")
+		}
 		if a.Text == "" && a.Dim.IsPlain() {
 			return e.WithHelp("write the number on the left with its unit, as in 3 %s", unitName(b))
 		}
