@@ -184,15 +184,7 @@ func systems(name string, a, b Value, onPlants func(x, y *Plant) (*Plant, error)
 		return nil, complexCoefficients(name, a, b)
 	}
 	if isImproper(a) || isImproper(b) {
-		x, err := ToTransfer(a)
-		if err != nil {
-			return nil, err
-		}
-		y, err := ToTransfer(b)
-		if err != nil {
-			return nil, err
-		}
-		return onTransfers(x, y)
+		return throughTransfers(a, b, onTransfers)
 	}
 	x, err := ToPlant(a)
 	if err != nil {
@@ -203,6 +195,19 @@ func systems(name string, a, b Value, onPlants func(x, y *Plant) (*Plant, error)
 		return nil, err
 	}
 	return orError(onPlants(x, y))
+}
+
+// throughTransfers runs an operation on the transfer functions of both operands.
+func throughTransfers(a, b Value, operation func(a, b Value) (Value, error)) (Value, error) {
+	x, err := ToTransfer(a)
+	if err != nil {
+		return nil, err
+	}
+	y, err := ToTransfer(b)
+	if err != nil {
+		return nil, err
+	}
+	return operation(x, y)
 }
 
 func isImproper(v Value) bool {
@@ -275,15 +280,7 @@ func divideAsPlants(a, b Value) (Value, error) {
 			WithHelp("write P1 * P2^-1")
 	}
 	if isImproper(a) || isImproper(b) {
-		x, err := ToTransfer(a)
-		if err != nil {
-			return nil, err
-		}
-		y, err := ToTransfer(b)
-		if err != nil {
-			return nil, err
-		}
-		return divideAsTransfers(x, y)
+		return throughTransfers(a, b, divideAsTransfers)
 	}
 	q, err := ToPlant(b)
 	if err != nil {
