@@ -71,6 +71,7 @@ func TestPackagesImportDownwardsOnly(t *testing.T) {
 var owners = map[string][]string{
 	"github.com/expr-lang/expr": {"gainwright/lang/eval"},
 	"github.com/peterh/liner":   {"gainwright/lang/prompt"},
+	"golang.org/x/image":        {"gainwright/lang/figure"},
 	"gonum.org/v1/gonum":        {"gainwright/lang/value", "gainwright/builtins"},
 	"gonum.org/v1/plot":         {"gainwright/lang/figure"},
 }
