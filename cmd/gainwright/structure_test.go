@@ -73,7 +73,6 @@ var owners = map[string][]string{
 	"github.com/peterh/liner":   {"gainwright/lang/prompt"},
 	"golang.org/x/image":        {"gainwright/lang/figure"},
 	"gonum.org/v1/gonum":        {"gainwright/lang/value", "gainwright/builtins"},
-	"gonum.org/v1/plot":         {"gainwright/lang/figure"},
 }
 
 func TestLibrariesStayInTheirPlace(t *testing.T) {
