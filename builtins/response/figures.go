@@ -111,7 +111,7 @@ func (c *course) outputFigures(r *value.Response, i int, within float64) (*outpu
 		}
 		return c.q.call.Context.Err()
 	}
-	return f, f.fill(final, start, within, scan, math.Max(1e-11, trace.Err/math.Max(largest(trace.Values), 1e-300)), c.q.until)
+	return f, f.fill(final, start, within, scan, math.Max(1e-11, trace.Err/math.Max(largest(trace.Values), 1e-300)), c.q.until, largest(trace.Values))
 }
 
 func (c *course) wholeFigures(f *outputFigures, trace *value.Trace, i int, start, within float64) error {
@@ -124,7 +124,7 @@ func (c *course) wholeFigures(f *outputFigures, trace *value.Trace, i int, start
 		return nil
 	}
 	f.final, f.hidden = quantity(t.final, trace.Unit), t.hidden
-	err = f.fill(t.final, start, within, t.scan, 1e-11, math.Inf(1))
+	err = f.fill(t.final, start, within, t.scan, 1e-11, math.Inf(1), largest(trace.Values))
 	if err == errUnlocated {
 		f.hidden = err.Error()
 		return nil
@@ -132,12 +132,20 @@ func (c *course) wholeFigures(f *outputFigures, trace *value.Trace, i int, start
 	return err
 }
 
-// fill reads the figures; scan follows the signal into a reading.
-func (f *outputFigures) fill(final value.Number, start, within float64, scan func(*reading) error, relative, until float64) error {
+// noWay is the part of a signal's largest size below which the way it goes in the end
+// cannot be told from none.
+const noWay = 1e-10
+
+// fill reads the figures; scan follows the signal, whose largest size was seen, into a
+// reading.
+func (f *outputFigures) fill(final value.Number, start, within float64, scan func(*reading) error, relative, until, seen float64) error {
 	end := final.Float64()
 	way := end - start
 	size := math.Max(math.Abs(end), math.Abs(start))
-	returns := math.Abs(way) <= 1e-12*size || size == 0
+	returns := math.Abs(way) <= math.Max(1e-12*size, math.Max(2*final.ErrorEstimate(), noWay*seen))
+	if returns && final.ErrorEstimate() > 0 {
+		end = start
+	}
 	if returns { // it ends where it began: measure by its largest excursion
 		first := newReading(end-1, 1, within)
 		if err := f.excursion(first, end, scan); err != nil {

@@ -272,7 +272,7 @@ func fieldSheets(fields []value.Named, hasTable bool, o Options) (sheets []Sheet
 		} else {
 			s = sheetOf(v, nil, o)
 		}
-		s.Label = oneLine(readable(f.Name))
+		s.Label = oneLine(f.Name)
 		sheets = append(sheets, s)
 	}
 	return sheets, large

@@ -130,13 +130,10 @@ func shortFields(fields []value.Named, o Options) (string, sign, bool) {
 			text = oneLine(string(plain))
 		}
 		s = s.both(t)
-		parts = append(parts, readable(f.Name)+" "+text)
+		parts = append(parts, f.Name+" "+text)
 	}
 	return strings.Join(parts, ", "), s, true
 }
-
-// readable turns a field's name into words.
-func readable(name string) string { return strings.ReplaceAll(name, "_", " ") }
 
 const inlineMatrixEntries = 16
 

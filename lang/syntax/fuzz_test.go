@@ -2,9 +2,10 @@ package syntax
 
 import (
 	"errors"
+	"fmt"
+	"runtime"
 	"strings"
 	"testing"
-	"time"
 
 	"gainwright/lang/diag"
 )
@@ -94,31 +95,49 @@ func BenchmarkTidy(b *testing.B) {
 	}
 }
 
-// TestLargeTextsTakeLinearTime compares a text with one eight times as long. A quadratic
-// step would take 64 times as long; the bound leaves room for a busy machine.
-func TestLargeTextsTakeLinearTime(t *testing.T) {
-	for name, unit := range map[string]string{
-		"statements": craneText,
-		"matrix":     "x = [" + strings.Repeat("1, -2.5\n", 100) + "]\n",
-		"comments":   strings.Repeat("# a\n", 100),
-		"calls":      "x = " + strings.Repeat("f(", 100) + strings.Repeat(")", 100) + "\n",
-	} {
-		duration := func(times int) time.Duration {
+// longTexts are texts whose kind a careless step would make quadratic.
+var longTexts = map[string]string{
+	"statements": craneText,
+	"matrix":     "x = [" + strings.Repeat("1, -2.5\n", 100) + "]\n",
+	"comments":   strings.Repeat("# a\n", 100),
+	"calls":      "x = " + strings.Repeat("f(", 100) + strings.Repeat(")", 100) + "\n",
+}
+
+// TestLargeTextsTakeLinearMemory compares what is allocated for a text with one eight times
+// as long. BenchmarkLargeTexts compares the time.
+func TestLargeTextsTakeLinearMemory(t *testing.T) {
+	for name, unit := range longTexts {
+		allocated := func(times int) uint64 {
 			src := diag.NewSource("f.gain", strings.Repeat(unit, times))
-			best := time.Hour
-			for range 3 {
-				start := time.Now()
-				if _, err := Tidy(src); err != nil {
-					t.Fatal(name, err)
-				}
-				best = min(best, time.Since(start))
+			var before, after runtime.MemStats
+			runtime.ReadMemStats(&before)
+			if _, err := Tidy(src); err != nil {
+				t.Fatal(name, err)
 			}
-			return best
+			runtime.ReadMemStats(&after)
+			return after.TotalAlloc - before.TotalAlloc
 		}
 		n := 60_000 / len(unit)
-		short, long := duration(n), duration(8*n)
-		if long > 30*short {
-			t.Errorf("%s: %v, and %v for a text eight times as long", name, short, long)
+		allocated(n) // what is made once
+		short, long := allocated(n), allocated(8*n)
+		if long > 16*short {
+			t.Errorf("%s: %d bytes, and %d for a text eight times as long", name, short, long)
+		}
+	}
+}
+
+func BenchmarkLargeTexts(b *testing.B) {
+	for name, unit := range longTexts {
+		for _, kilobytes := range []int{60, 480} {
+			src := diag.NewSource("f.gain", strings.Repeat(unit, kilobytes*1000/len(unit)))
+			b.Run(fmt.Sprintf("%s/%d", name, kilobytes), func(b *testing.B) {
+				b.SetBytes(int64(len(src.Text)))
+				for b.Loop() {
+					if _, err := Tidy(src); err != nil {
+						b.Fatal(err)
+					}
+				}
+			})
 		}
 	}
 }
