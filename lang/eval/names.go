@@ -2,6 +2,7 @@ package eval
 
 import (
 	"math/big"
+	"slices"
 	"sort"
 	"strings"
 
@@ -89,9 +90,14 @@ func (s *Session) unknownFunction(name string, locals []string) *diag.Error {
 	e := diag.New(diag.Name, "there is no function %s", name)
 	if near := s.near(name, locals); near != "" {
 		e.WithHelp("is %s meant?", near)
+	} else if slices.Contains(fieldsAsFunctions, name) {
+		e.WithHelp("it is a field, written behind a point: x.%s", name)
 	}
 	return e
 }
+
+// fieldsAsFunctions are fields that are easily taken for functions.
+var fieldsAsFunctions = []string{"length", "degree", "values", "cost", "gramian", "distance", "missing", "overshoot", "settling", "states", "inputs", "outputs"}
 
 func (s *Session) near(name string, locals []string) string {
 	all := append([]string(nil), locals...)
