@@ -50,7 +50,7 @@ func (r *run) runSchedule(t *task, src *diag.Source, st *syntax.Schedule) *diag.
 	if err != nil {
 		return err
 	}
-	if err := s.compute(st, count); err != nil {
+	if err := s.compute(count); err != nil {
 		return err
 	}
 	r.bound(src, st.Span, st.Name, s.report(), "", oneLine(sliceOf(src, st.Span)))
@@ -149,7 +149,7 @@ func (s *schedule) inParameterUnit(v value.Value) (float64, error) {
 }
 
 // compute works out the nodes, and then what interpolation gives in the middle between two.
-func (s *schedule) compute(st *syntax.Schedule, count int) *diag.Error {
+func (s *schedule) compute(count int) *diag.Error {
 	progress := func(done int) {
 		if report := s.study.session.progress; report != nil {
 			report(done, 2*count-1)
@@ -313,12 +313,15 @@ func (s *schedule) judge(n *scheduled) *diag.Error {
 		return asError(err, "schedule").At(s.at).In(s.study.source)
 	}
 	plant.A = fed.(*value.Matrix)
-	for name, to := range map[string]*value.Value{"least_damping": &n.damping, "slowest_decay": &n.decay} {
-		v, err := s.figure(name, &plant)
+	for _, f := range [...]struct {
+		name string
+		to   *value.Value
+	}{{"least_damping", &n.damping}, {"slowest_decay", &n.decay}} {
+		v, err := s.figure(f.name, &plant)
 		if err != nil {
-			return asError(err, name).At(s.at).In(s.study.source)
+			return asError(err, f.name).At(s.at).In(s.study.source)
 		}
-		*to = v
+		*f.to = v
 	}
 	return nil
 }
