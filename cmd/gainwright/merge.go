@@ -16,8 +16,8 @@ import (
 
 // largest part file, and largest sum of all
 const (
-	largestPart  = 512 << 20
-	largestParts = 2 << 30
+	largestPart  = 256 << 20
+	largestParts = 1 << 30
 )
 
 func (a *app) mergeCommand() *cobra.Command {
