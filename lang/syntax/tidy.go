@@ -309,18 +309,19 @@ func (t *tidier) spaced(before, after int) bool {
 	case rolePercent:
 		return b.spaceBefore
 	case roleChosen:
-		return t.chosen(b)
+		return t.chosen(b) || a.kind == tokenUnit
 	}
 	switch a.role {
 	case roleSign, roleTight:
 		return false
 	case roleChosen:
-		return t.chosen(a)
+		return t.chosen(a) || before > 0 && t.pieces[before-1].kind == tokenUnit
 	}
 	return true
 }
 
-// chosen tells whether the author put a blank on either side of the operator.
+// chosen tells whether the author put a blank on either side of the operator; after a unit there
+// always is one, since the unit would go on with what touches it.
 func (t *tidier) chosen(p piece) bool {
 	return p.spaceBefore || strings.ContainsAny(t.text[p.span.End:p.span.End+1], " \t\r\n#")
 }
