@@ -407,3 +407,62 @@ func TestErrorsOfEigenvalues(t *testing.T) {
 	}
 	tally.report()
 }
+
+// TestDigitsOfRiccatiAreNotWasted: where X is known to hold to rounding, the claim may not
+// be poor because bounds of every datum add up. The gain of a chain of integrators with unit
+// weights is the Butterworth polynomial (common practice); a sampled plant with strongly
+// growing modes has a huge X that hardly depends on the rounding of its data.
+func TestDigitsOfRiccatiAreNotWasted(t *testing.T) {
+	const n = 18
+	chain, drive, first := mat.NewDense(n, n, nil), mat.NewDense(n, 1, nil), mat.NewDense(n, n, nil)
+	for i := range n - 1 {
+		chain.Set(i, i+1, 1)
+	}
+	drive.Set(n-1, 0, 1)
+	first.Set(0, 0, 1)
+	s, err := Riccati(context.Background(), RiccatiProblem{A: chain, B: drive, Q: first, R: mat.NewDense(1, 1, []float64{1})})
+	if err != nil {
+		t.Fatal(err)
+	}
+	butterworth := []float64{1}
+	for k := range n / 2 {
+		damping := 2 * math.Sin(math.Pi*float64(2*k+1)/(2*n))
+		next := make([]float64, len(butterworth)+2)
+		for i, c := range butterworth {
+			next[i] += c
+			next[i+1] += damping * c
+			next[i+2] += c
+		}
+		butterworth = next
+	}
+	for j := range n {
+		if want := butterworth[n-j]; math.Abs(s.K.At(0, j)-want) > 1e-13*want {
+			t.Errorf("K[%d] = %.16g, not %.16g", j+1, s.K.At(0, j), want)
+		}
+	}
+	if s.Certificate.Digits < 13 || s.GainDigits < 13 {
+		t.Errorf("the chain claims %.1f and %.1f digits", s.Certificate.Digits, s.GainDigits)
+	}
+	r := rand.New(rand.NewSource(11))
+	for k := range 30 {
+		size := 3 + k%5
+		a := normalMatrix(r, size, size)
+		a.Scale(math.Pow(10, float64(k%2)/2), a)
+		b, q := normalMatrix(r, size, 1+k%2), mat.NewDense(size, size, nil)
+		for i := range size {
+			q.Set(i, i, 1)
+		}
+		_, m := b.Dims()
+		weight := mat.NewDense(m, m, nil)
+		for i := range m {
+			weight.Set(i, i, 1)
+		}
+		s, err := Riccati(context.Background(), RiccatiProblem{A: a, B: b, Q: q, R: weight, Sampled: true})
+		if err != nil {
+			t.Fatal(k, err)
+		}
+		if s.Certificate.Digits < 8 {
+			t.Errorf("plant %d, X of size %.1e, claims %.1f digits", k, peakEntry(s.X), s.Certificate.Digits)
+		}
+	}
+}

@@ -33,7 +33,8 @@
 //     refinement, singular values with the gap of every rank shown.
 //   - Sylvester, Lyapunov: Schur forms and a recursive triangular solve, separations estimated.
 //   - Riccati: ordered Schur form of the Hamiltonian (continuous), structure-preserving
-//     doubling (sampled), Newton steps last; refusals by name.
+//     doubling (sampled), Newton steps last; refusals by name; errors by envelopes, and where
+//     these are wide by small-sample estimates.
 //   - Exponential, Hold, HoldLine, Bilinear, DelayedHold, PadeDelay, Continuous, VanLoanCost,
 //     VanLoanNoise: sampling and its inverse.
 //   - Staircase, Reachability, Observability, KalmanSplit: ranks by orthogonal reductions.

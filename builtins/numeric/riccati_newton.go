@@ -23,7 +23,9 @@ type riccatiState struct {
 	size        float64
 	solver      *lyapunovSolver // with Acᵀ for coefficient
 	envelope    []float64       // ±P encloses the error of X
-	method      string
+	// gainEstimate is what the error of X is estimated to pass on to K; NaN to take the envelope's.
+	gainEstimate float64
+	method       string
 }
 
 var (
@@ -41,7 +43,7 @@ const mostNewtonSteps = 60
 //
 // doubly takes the residuals in doubled precision from the start.
 func (d *riccatiData) newton(ctx context.Context, x []float64, doubly bool) (*riccatiState, error) {
-	s := &riccatiState{x: append([]float64(nil), x...), method: d.method, doubled: doubly}
+	s := &riccatiState{x: append([]float64(nil), x...), method: d.method, doubled: doubly, gainEstimate: math.NaN()}
 	n := d.n
 	dx := make([]float64, n*n)
 	previous := math.Inf(1)
@@ -191,7 +193,11 @@ func (d *riccatiData) settle(s *riccatiState) error {
 		}
 	}
 	s.doubled = true
-	return d.assess(s, true)
+	if err := d.assess(s, true); err != nil {
+		return err
+	}
+	d.sharpen(s, dx)
+	return nil
 }
 
 // assess computes gain, closed loop, residual and the error estimate of x.

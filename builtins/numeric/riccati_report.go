@@ -83,6 +83,9 @@ func (d *riccatiData) gainError(s *riccatiState) (indirect, direct float64) {
 	for j := range right {
 		indirect = math.Max(indirect, largestOf(left)*right[j]/d.scale[j])
 	}
+	if s.gainEstimate < indirect {
+		indirect = s.gainEstimate
+	}
 	return indirect, d.directGainError(s, inverse)
 }
 
