@@ -24,7 +24,8 @@ var figuresBuiltin = &value.Builtin{
 		"settling is the last time the output is outside the band around its final value; of a sampled system the first sample from which on it is inside. rise is the time from the first crossing of 10 % of the way to that of 90 %. largest_input is the largest size of the input. " +
 		"Where an output ends where it started (after an impulse) settling is within that part of its largest excursion, and there is no overshoot and no rise.\n\n" +
 		"Linear responses to a step, an impulse or a start are followed for all time, not only until: the final value is exact where the plant is, turns and crossings are located on the response itself. " +
-		"Limited, sampled-law and nonlinear responses are followed until their end. A response without a final value says why in its place.",
+		"Limited, sampled-law and nonlinear responses are followed until their end. A response without a final value says why in its place. " +
+		"In a document the response is drawn with the band, and, where f is shown and f.overshoot <= 5% or f.settling <= 2 s is required, with what these forbid shaded.",
 	Examples: []value.Example{
 		{Input: "figures(response(4/(s^2 + 2*s + 4)))", Output: "figures of the step response\n  final_value   = 1\n  largest_input = 1\n  overshoot     ≈ 16.303 %\n  overshoot_at  ≈ 1.8138 s\n  undershoot    = 0 %\n  settling      ≈ 4.0382 s\n  band          = 2 %\n  rise          ≈ 0.81879 s\n  rise_band     = [10 %, 90 %]"},
 		{Input: "figures(response(1/(s*(s + 1)))).final_value", Output: "\"none: it keeps growing, as an integrator's answer does\""},

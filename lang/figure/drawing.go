@@ -65,15 +65,6 @@ func (c *canvas) line(class string, x1, y1, x2, y2 float64) {
 	c.add(shape{class: class, lines: [][]place{{at(x1, y1), at(x2, y2)}}})
 }
 
-// polygon is a closed line through points given as x, y, x, y, ….
-func (c *canvas) polygon(class string, coordinates ...float64) {
-	var line []place
-	for k := 0; k+1 < len(coordinates); k += 2 {
-		line = append(line, at(coordinates[k], coordinates[k+1]))
-	}
-	c.add(shape{class: class, lines: [][]place{line}, closed: true})
-}
-
 func (c *canvas) circle(class string, x, y, r float64) { c.ellipse(class, x, y, r, r) }
 
 func (c *canvas) ellipse(class string, x, y, rx, ry float64) {

@@ -36,7 +36,7 @@ func Of(v value.Value, id string) (svg string, ok bool) {
 func Draw(v value.Value) (*Drawing, bool) {
 	switch x := value.Force(v).(type) {
 	case *value.Response:
-		return drawResponse(x)
+		return drawResponse(x, nil)
 	case *value.Study:
 		return DrawStudy(x, nil)
 	case *value.Report:
@@ -46,7 +46,7 @@ func Draw(v value.Value) (*Drawing, bool) {
 		case IsPoleMap(x):
 			return drawPoleMap(x)
 		case x.Basis != nil:
-			return drawResponse(x.Basis)
+			return DrawFigures(x, nil)
 		}
 	}
 	return nil, false

@@ -197,7 +197,7 @@ func TestSweepMarksItsCrossings(t *testing.T) {
 func TestPoleMapHasItsSigns(t *testing.T) {
 	elements, texts := parsed(t, draw(t, poles()))
 	// One of each sign more stands in the key.
-	if elements["path pole"] != 4 || elements["circle zero"] != 2 || elements["rect wanted"] != 2 || elements["path shade"] != 2 {
+	if elements["path pole"] != 4 || elements["circle zero"] != 2 || elements["rect wanted"] != 2 || elements["path shade"] != 1 || elements["path limit"] != 1 {
 		t.Errorf("elements %v", elements)
 	}
 	if all := strings.Join(texts, "|"); !strings.Contains(all, "pole at −1 + 2i; pole at −1 − 2i") {

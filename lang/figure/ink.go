@@ -33,7 +33,7 @@ var inks = map[string]ink{
 	"four":   {stroke: "four", width: 1.7, dashes: []float64{9, 3, 2, 3}},
 	"limit":  {stroke: "two", width: 1.2, dashes: []float64{4, 3}},
 	"shade":  {fill: "shade", opacity: 0.09},
-	"band":   {fill: "three", opacity: 0.12},
+	"band":   {fill: "three", opacity: 0.3},
 	"bar":    {fill: "one", opacity: 0.55},
 	"dot":    {fill: "one", opacity: 0.5},
 	"corner": {stroke: "two", width: 1.4},

@@ -34,6 +34,7 @@ type panel struct {
 	step    float64   // wanted distance of ticks, 0 for any round one
 	marks   []mark
 	bands   []value.Band
+	must    *mustStay
 	y       *axis
 }
 
@@ -101,8 +102,19 @@ func (p *panel) scale() bool {
 		}
 	}
 	for _, b := range p.bands { // room for the words at the farthest point
+		see(b.Low)
+		see(b.High)
 		if b.Peak >= high {
 			see(b.Peak + 0.12*(high-low))
+		}
+	}
+	if p.must != nil && p.must.hasCeiling { // room for its words
+		away := 0.14 * (high - low)
+		if p.must.downwards {
+			away = -away
+		}
+		if d := p.must.ceiling - (low+high)/2; math.Abs(d) < 2*(high-low) {
+			see(p.must.ceiling + away)
 		}
 	}
 	if high-low < 1e-9*math.Max(math.Abs(low), math.Abs(high)) {
@@ -117,7 +129,7 @@ func (p *panel) scale() bool {
 		}
 		first, last := math.Floor(low/step), math.Ceil(high/step)
 		if first == last {
-			last++
+			first, last = first-1, last+1
 		}
 		p.y = (&axis{low: first * step, high: last * step}).labelled(step, first, last)
 		return true
@@ -155,6 +167,9 @@ func (c *canvas) panel(p *panel, x *axis, last bool) {
 		if low < high {
 			c.rectangle("band", x.from, p.y.place(high), x.to-x.from, p.y.place(low)-p.y.place(high))
 		}
+	}
+	if p.must != nil {
+		c.mustStay(p.must, x, p.y)
 	}
 	for _, level := range p.levels {
 		if level >= p.y.low && level <= p.y.high {

@@ -83,6 +83,9 @@ func drawPoleMap(r *value.Report) (*Drawing, bool) {
 	for _, s := range drawn {
 		left, right, up = math.Min(left, s.re), math.Max(right, s.re), math.Max(up, math.Abs(s.im))
 	}
+	if decay, ok := fieldNumber(r, "decay"); ok && !sampled && decay < farZero*(right-left+up) {
+		left = math.Min(left, -decay)
+	}
 	x, y := mapAxes(left, right, up)
 	var c canvas
 	height := headRoom + mapHeight + footRoom
@@ -175,19 +178,28 @@ func (c *canvas) forbidden(r *value.Report, x, y *axis, sampled bool) {
 		c.forbiddenSampled(r, decay, x, y)
 		return
 	}
-	edge := x.place(-decay)
-	c.rectangle("shade", edge, y.to, math.Max(0, x.to-edge), y.from-y.to)
 	damping, ok := fieldNumber(r, "damping")
 	if !ok || damping <= 0 || damping >= 1 {
-		return
+		damping = 0
 	}
-	// The poles of this damping lie on two rays; what lies between them and the imaginary axis is shaded.
-	reach := 2 * math.Max(math.Abs(x.low), y.high) / damping
-	slope := math.Sqrt(1 - damping*damping)
-	for _, side := range []float64{1, -1} {
-		c.polygon("shade", x.place(0), y.place(0), x.place(-damping*reach), y.place(side*slope*reach), x.place(0), y.place(side*reach))
-		c.line("limit", x.place(0), y.place(0), x.place(-damping*reach), y.place(side*slope*reach))
+	// The poles of one damping lie on two rays of this slope; without one the rays stand upright.
+	slope := math.Sqrt(1-damping*damping) / math.Max(damping, 1e-9)
+	far := 4 * (math.Max(-x.low, x.high) + y.high + decay) // beyond the field
+	bend := math.Max(decay, math.Min(far, far/slope))      // where a ray leaves it
+	var allowed []place
+	for _, p := range [][2]float64{{far, -1}, {bend, -1}, {decay, -1}, {decay, 1}, {bend, 1}, {far, 1}} {
+		allowed = append(allowed, at(x.place(-p[0]), y.place(p[1]*math.Min(far, slope*p[0]))))
 	}
+	c.shadeOutside(x, y, allowed)
+	if damping > 0 || decay > 0 {
+		c.add(shape{class: "limit", lines: [][]place{allowed[1:5]}})
+	}
+}
+
+// shadeOutside shades the field but for a hole, whose edge turns against the clock on paper.
+func (c *canvas) shadeOutside(x, y *axis, hole []place) {
+	edge := []place{at(x.from, y.to), at(x.to, y.to), at(x.to, y.from), at(x.from, y.from)}
+	c.add(shape{class: "shade", lines: [][]place{edge, hole}, closed: true})
 }
 
 // forbiddenSampled shades all but the places exp(p·T) of poles p that decay as required.
@@ -199,13 +211,12 @@ func (c *canvas) forbiddenSampled(r *value.Report, decay float64, x, y *axis) {
 	}
 	const pieces = 180
 	var allowed []place
-	for k := range 2 * pieces { // clockwise on paper, against the field's edge
+	for k := range 2 * pieces {
 		angle := math.Pi * float64(k-pieces) / pieces
 		radius := math.Min(math.Exp(-decay*every), math.Exp(-damping/math.Sqrt(1-damping*damping)*math.Abs(angle)))
 		allowed = append(allowed, at(x.place(radius*math.Cos(angle)), y.place(radius*math.Sin(angle))))
 	}
-	edge := []place{at(x.from, y.to), at(x.to, y.to), at(x.to, y.from), at(x.from, y.from)}
-	c.add(shape{class: "shade", lines: [][]place{edge, allowed}, closed: true})
+	c.shadeOutside(x, y, allowed)
 	if damping > 0 || decay > 0 {
 		c.add(shape{class: "limit", lines: [][]place{append(allowed, allowed[0])}})
 	}

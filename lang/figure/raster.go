@@ -17,16 +17,20 @@ const pixelsPerUnit = 2.25
 // PNG paints the drawing on white paper, 1440 pixels wide where the drawing has 640 units.
 // The same drawing gives the same bytes.
 func (d *Drawing) PNG() ([]byte, error) {
+	var out bytes.Buffer
+	encoder := png.Encoder{CompressionLevel: png.BestCompression}
+	if err := encoder.Encode(&out, d.painted()); err != nil {
+		return nil, err
+	}
+	return out.Bytes(), nil
+}
+
+func (d *Drawing) painted() *image.RGBA {
 	p := newPainter(d)
 	for k := range d.shapes {
 		p.shape(&d.shapes[k])
 	}
-	var out bytes.Buffer
-	encoder := png.Encoder{CompressionLevel: png.BestCompression}
-	if err := encoder.Encode(&out, p.image); err != nil {
-		return nil, err
-	}
-	return out.Bytes(), nil
+	return p.image
 }
 
 // painter fills outlines with ink.

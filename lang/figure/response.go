@@ -3,7 +3,6 @@ package figure
 import (
 	"fmt"
 	"math"
-	"strconv"
 	"strings"
 
 	"gainwright/lang/value"
@@ -13,7 +12,8 @@ import (
 const mostPanels = 8
 
 // drawResponse draws outputs, inputs and states over time, those of one unit together.
-func drawResponse(r *value.Response) (*Drawing, bool) {
+// required is what must hold of the signal with a band; nil for nothing.
+func drawResponse(r *value.Response, required *requiredCourse) (*Drawing, bool) {
 	n := len(r.Instants)
 	if n == 0 {
 		return nil, false
@@ -44,6 +44,9 @@ func drawResponse(r *value.Response) (*Drawing, bool) {
 			}
 			p.curves = append(p.curves, one)
 			p.band(s.Band)
+			if s.Band != nil && required != nil {
+				p.must = required.of(&s)
+			}
 			unit, role := s.Unit.Text, role
 			p.heading = func(power int) string {
 				if len(p.curves) == 1 {
@@ -62,7 +65,7 @@ func drawResponse(r *value.Response) (*Drawing, bool) {
 	if title == "" {
 		title = "response"
 	}
-	return stacked(title, describeResponse(r, panels, left), panels, x, func(power int) string { return heading("time", "s", power) })
+	return stacked(title, describeResponse(r, panels, left)+required.described(), panels, x, func(power int) string { return heading("time", "s", power) })
 }
 
 // placeFor finds the panel of a unit that has room for a further curve.
@@ -85,7 +88,7 @@ func (p *panel) band(b *value.Band) {
 		p.marks = append(p.marks, mark{b.PeakAt, b.Peak, brief(b.Peak)})
 	}
 	if !math.IsInf(b.From, 0) && b.From > 0 {
-		p.marks = append(p.marks, mark{b.From, nearest(b, p.curves[len(p.curves)-1]), "settled at " + brief2(b.From) + " s"})
+		p.marks = append(p.marks, mark{b.From, nearest(b, p.curves[len(p.curves)-1]), "settled at " + briefer(b.From) + " s"})
 	}
 }
 
@@ -130,5 +133,3 @@ func describeResponse(r *value.Response, panels []*panel, left int) string {
 	}
 	return text
 }
-
-func brief(x float64) string { return signed(strconv.FormatFloat(x, 'g', 4, 64)) }

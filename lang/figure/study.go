@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"math"
 	"sort"
-	"strconv"
 	"strings"
 
 	"gainwright/lang/value"
@@ -183,7 +182,7 @@ func (c *canvas) limit(l Limit, x, y *axis) {
 		c.rectangle("shade", at, y.to, x.to-at, y.from-y.to)
 	}
 	c.line("limit", at, y.from, at, y.to)
-	text := word + signed(strconv.FormatFloat(l.Bound, 'g', 6, 64))
+	text := word + rounded(l.Bound, 6)
 	if at+5+textWidth(text) > x.to {
 		c.text(at-5, y.to+12, end, "", text)
 	} else {
@@ -230,7 +229,7 @@ func (c *canvas) causes(s *value.Study, r *value.StudyResult, top float64) strin
 	c.scatter(s, r, all[0], top)
 	var parts []string
 	for _, one := range all[:min(len(all), mostBars)] {
-		parts = append(parts, one.name+" "+brief2(one.value))
+		parts = append(parts, one.name+" "+briefer(one.value))
 	}
 	return "Rank correlation with the parameters: " + strings.Join(parts, ", ") + "."
 }

@@ -79,8 +79,8 @@ func markCrossings(gain, phase *panel) string {
 		if len(gain.marks) == mostMarks {
 			break
 		}
-		gain.marks = append(gain.marks, mark{c, 0, "gain 1 at " + brief2(c)})
-		text += fmt.Sprintf(" The gain passes 1 near %s rad/s.", brief2(c))
+		gain.marks = append(gain.marks, mark{c, 0, "gain 1 at " + briefer(c)})
+		text += fmt.Sprintf(" The gain passes 1 near %s rad/s.", briefer(c))
 	}
 	low, high := math.Inf(1), math.Inf(-1)
 	for _, v := range p.y {
@@ -94,23 +94,35 @@ func markCrossings(gain, phase *panel) string {
 			if len(phase.marks) == mostMarks {
 				break
 			}
-			phase.marks = append(phase.marks, mark{c, level, "half a turn at " + brief2(c)})
-			text += fmt.Sprintf(" The phase passes %s° near %s rad/s.", brief(level), brief2(c))
+			phase.marks = append(phase.marks, mark{c, level, "half a turn at " + briefer(c)})
+			text += fmt.Sprintf(" The phase passes %s° near %s rad/s.", brief(level), briefer(c))
 		}
 	}
 	return text
 }
 
-func brief2(x float64) string { return fmt.Sprintf("%.3g", x) }
-
-// crossings gives the frequencies where the values pass a level, between two points.
+// crossings gives the frequencies where the values pass a level: at a point, or between
+// two. What touches the level and turns back, or stays on it, passes nothing.
 func crossings(x, y []float64, level float64) []float64 {
 	var at []float64
-	for i := 1; i < len(x); i++ {
-		a, b := y[i-1]-level, y[i]-level
-		if a*b < 0 {
-			at = append(at, math.Exp(math.Log(x[i-1])+a/(a-b)*math.Log(x[i]/x[i-1])))
+	last := -1 // the latest point that is not on the level
+	for i := range x {
+		b := y[i] - level
+		switch {
+		case math.IsNaN(b):
+			last = -1
+			continue
+		case b == 0:
+			continue
+		case last >= 0 && (y[last]-level)*b < 0 && i-last <= 2:
+			if i-last == 2 {
+				at = append(at, x[i-1])
+			} else {
+				a := y[last] - level
+				at = append(at, math.Exp(math.Log(x[last])+a/(a-b)*math.Log(x[i]/x[last])))
+			}
 		}
+		last = i
 	}
 	return at
 }

@@ -95,19 +95,17 @@ func signalLines(r *value.Response, s value.Trace, width int) []string {
 		label := ""
 		switch {
 		case steady && k == terminalLines/2:
-			label = brief3(level)
+			label = briefer(level)
 		case steady:
 		case k == 0:
-			label = brief3(high)
+			label = briefer(high)
 		case k == terminalLines-1:
-			label = brief3(low)
+			label = briefer(low)
 		}
 		lines = append(lines, strings.TrimRight(padded(label)+" "+row, " ⠀"))
 	}
 	return lines
 }
-
-func brief3(x float64) string { return signed(brief2(x)) }
 
 // padded sets a label at the right of its room.
 func padded(s string) string {
@@ -115,7 +113,7 @@ func padded(s string) string {
 }
 
 func terminalFoot(r *value.Response, width int) []string {
-	first, last := brief3(r.Instants[0])+" s", brief3(r.Instants[len(r.Instants)-1])+" s"
+	first, last := briefer(r.Instants[0])+" s", briefer(r.Instants[len(r.Instants)-1])+" s"
 	gap := max(1, width-labelCells-1-len([]rune(first))-len([]rune(last)))
 	return []string{strings.Repeat(" ", labelCells+1) + first + strings.Repeat(" ", gap) + last}
 }
@@ -201,7 +199,7 @@ func studyLines(s *value.Study, width int) []string {
 		}
 		lines = append(lines, padded(label)+" "+row)
 	}
-	first, last := brief3(h.low), brief3(h.high)
+	first, last := briefer(h.low), briefer(h.high)
 	if h.unit != "" {
 		last += " " + h.unit
 	}

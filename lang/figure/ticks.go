@@ -134,6 +134,29 @@ func superscript(n int) string {
 		"5", "⁵", "6", "⁶", "7", "⁷", "8", "⁸", "9", "⁹").Replace(strconv.Itoa(n))
 }
 
+// brief and briefer write a number with four and three digits.
+func brief(x float64) string   { return rounded(x, 4) }
+func briefer(x float64) string { return rounded(x, 3) }
+
+// rounded writes a number with so many significant digits as on paper: a power of ten
+// where the number would have many zeros.
+func rounded(x float64, digits int) string {
+	text := strconv.FormatFloat(x, 'e', digits-1, 64)
+	mantissa, exponent, ok := strings.Cut(text, "e")
+	if !ok { // it is not finite
+		return signed(text)
+	}
+	power, _ := strconv.Atoi(exponent) // of ten, two or three digits
+	if power < -4 || power > 5 {
+		if strings.Contains(mantissa, ".") {
+			mantissa = strings.TrimSuffix(strings.TrimRight(mantissa, "0"), ".")
+		}
+		return signed(mantissa) + "·10" + superscript(power)
+	}
+	near, _ := strconv.ParseFloat(text, 64)
+	return signed(strconv.FormatFloat(near, 'f', -1, 64))
+}
+
 // heading is what stands at an axis: the name, and the unit with the power of ten.
 func heading(name, unit string, power int) string {
 	if power != 0 {

@@ -69,7 +69,15 @@ func some(t *testing.T, seed uint64) []*Drawing {
 	if !ok {
 		t.Fatal("the limits are not drawn")
 	}
-	return append(out, limited)
+	response.Signals[0].Band = &value.Band{Low: offset + 0.95*size, High: offset + 1.05*size, From: 0.7 * end, PeakAt: end / 10, Peak: offset + 1.3*size}
+	required, ok := DrawFigures(&value.Report{Basis: response, Fields: []value.Named{{Name: "band", Value: value.Float(5)}}},
+		func(field string) []Limit {
+			return []Limit{{"<", map[string]float64{"overshoot": 100 * r.Float64(), "settling": end * r.Float64()}[field]}}
+		})
+	if !ok {
+		t.Fatal("the figures are not drawn")
+	}
+	return append(out, limited, required)
 }
 
 // TestLabelsStayInside: no text leaves the drawing, whatever the ranges are. The letters'
@@ -105,6 +113,17 @@ func TestTicksAreRound(t *testing.T) {
 		lead := step / math.Pow(10, math.Floor(math.Log10(step)+1e-6))
 		if d := math.Min(math.Abs(lead-1), math.Min(math.Abs(lead-2), math.Abs(lead-5))); d > 1e-3 && math.Abs(low) < 1e6*step {
 			t.Errorf("ticks of %g … %g are %g apart", a.low, a.high, step)
+		}
+	}
+}
+
+func TestNumbersAreWrittenAsOnPaper(t *testing.T) {
+	for want, got := range map[string]string{
+		"1230": briefer(1234), "12.3": briefer(12.3456), "−0.05": brief(-0.05), "1.5·10⁶": brief(1.5e6), "−2·10⁻⁷": brief(-2e-7),
+		"100000": brief(99999.9), "0": brief(0), "0.0003053": brief(0.00030529), "+Inf": brief(math.Inf(1)), "NaN": brief(math.NaN()), "0.1": rounded(0.1, 6),
+	} {
+		if got != want {
+			t.Errorf("%s is written %s", want, got)
 		}
 	}
 }
@@ -145,6 +164,9 @@ func TestPaletteIsThatOfTheStyle(t *testing.T) {
 		}
 		if i.width != 0 && i.width != 1.7 {
 			wants = append(wants, "stroke-width:"+strconv.FormatFloat(i.width, 'g', -1, 64))
+		}
+		if i.opacity != 0 {
+			wants = append(wants, "fill-opacity:"+strings.TrimPrefix(strconv.FormatFloat(i.opacity, 'g', -1, 64), "0")+";")
 		}
 		if len(i.dashes) > 0 {
 			var parts []string

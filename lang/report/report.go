@@ -57,7 +57,7 @@ type Document struct {
 
 // Figure is a drawing of the document with the statement that it belongs to.
 type Figure struct {
-	Text    string
+	Name    string // what the statement shows, or its line; unlike the others'
 	Drawing *figure.Drawing
 }
 
@@ -278,13 +278,13 @@ func (d *Document) result(e eval.Event) (Result, bool) {
 	switch {
 	case e.Shown != nil:
 		sheet := render.SheetOf(e.Text, e.Shown.Value, e.Shown.In, d.run.Options)
-		sheet.Figure = d.draw(e.Text, e.Shown.Value)
+		sheet.Figure = d.draw(e, e.Shown.Value)
 		r.Shown = &sheet
 	case e.Requirement != nil, e.Claim != nil:
 		v := render.VerdictOf(e, d.run.Options)
 		r.Verdict = &v
 		if e.Requirement != nil && e.Requirement.Study != nil && !d.showsStudy(e.Requirement.Study) {
-			r.Figure = d.draw(e.Text, e.Requirement.Study)
+			r.Figure = d.draw(e, e.Requirement.Study)
 		}
 	case e.Error != nil:
 		shown := *e.Error
