@@ -323,21 +323,16 @@ func (t *task) complete(g *value.Gain, k *value.Matrix) error {
 		g.Values = t.oriented(k)
 		return nil
 	}
-	asItStands := loop
-	if !loop.IsExact() { // the poles of the numbers in the gain, not of their uncertainty
-		re, _ := loop.Floats()
-		asItStands = value.FloatMatrix(n, n, re, 0)
-	}
 	roots := t.asWanted(k)
 	if roots == nil {
-		if roots, err = system.Eigenvalues(asItStands); err != nil {
+		if roots, err = t.given(k, loop); err != nil {
 			return err
 		}
 	}
 	g.Poles = system.List(roots).Items
 	e, err := numeric.Eigen(loop.Dense())
 	if err == nil {
-		s := value.FloatErr(e.VectorCondition, e.VectorCondition*1e-3)
+		s := value.FloatErr(e.VectorCondition, e.VectorCondition*(1e-3+1e-14*e.VectorCondition))
 		g.Sensitivity = &s
 		g.Rounding = value.Later(func() value.Value { return value.Text(t.rounding(k, roots, e)) })
 	}

@@ -265,6 +265,19 @@ func (s *solved) fill(g *value.Gain, a, b *value.Matrix, dual bool) error {
 	return t.complete(g, s.k)
 }
 
+// poles are those of A − B·K, with what the error of K leaves uncertain.
+func (s *solved) poles(a, b *value.Matrix) ([]system.Root, error) {
+	t := &task{a: a, b: b}
+	loop, err := t.loop(s.k)
+	if err != nil {
+		return nil, err
+	}
+	if n, _ := loop.Dims(); n == 0 {
+		return nil, nil
+	}
+	return system.EigenvaluesWithin(loop.Dense(), t.loopRounding(s.k, s.k.Err))
+}
+
 func kalmanGain(c *value.Call) (value.Value, error) {
 	p := c.Plant("plant")
 	n, _ := system.PlantSize(p)
@@ -360,14 +373,14 @@ func riccati(c *value.Call) (value.Value, error) {
 	if err != nil {
 		return nil, err
 	}
-	poles := &value.List{}
-	for _, v := range s.Poles {
-		poles.Items = append(poles.Items, system.Root{Value: v, Err: 1e-13 * math.Hypot(real(v), imag(v))}.Number())
+	poles, err := s.poles(a, b)
+	if err != nil {
+		return nil, err
 	}
 	return &value.Report{Title: "stabilising solution of the Riccati equation", Fields: []value.Named{
 		{Name: "solution", Value: s.x},
 		{Name: "gain", Value: s.k},
-		{Name: "poles", Value: poles},
+		{Name: "poles", Value: system.List(poles)},
 		{Name: "residual", Value: value.Float(s.Certificate.Residual)},
 		{Name: "condition", Value: value.Float(s.Certificate.Condition)},
 		{Name: "last_step", Value: value.Float(s.LastNewtonStep)},

@@ -43,9 +43,14 @@ func (t *task) rounding(k *value.Matrix, poles []system.Root, e *numeric.Eigensy
 		if err != nil {
 			return ""
 		}
-		if shift := largestShift(poles, moved); shift > spoiled {
-			return fmt.Sprintf("%s the gain does not give these poles: one moves by %.2g (relative to the larger of 1 and its size); it gives %s",
-				round.words, shift, listWords(moved))
+		// a floating gain is rounded already: what it gives is compared with what was wanted
+		which, reference := "these", poles
+		if t.wanted != nil && !k.IsExact() && round.digits == 16 {
+			which, reference = "the wanted", system.RootsFromList(t.wanted)
+		}
+		if shift := largestShift(reference, moved); shift > spoiled {
+			return fmt.Sprintf("%s the gain does not give %s poles: one moves by %.2g (relative to the larger of 1 and its size); it gives %s",
+				round.words, which, shift, listWords(moved))
 		}
 	}
 	return ""
@@ -56,21 +61,11 @@ func (t *task) roundedLoop(k []float64, r, n int) (*value.Matrix, error) {
 	if states, _ := t.a.Dims(); states > system.ExactOrder {
 		return nil, errors.New("too large")
 	}
-	a, err := system.Rational(t.a)
-	if err != nil {
-		return nil, err
-	}
-	b, err := system.Rational(t.b)
-	if err != nil {
-		return nil, err
-	}
 	x, err := exact.FromFloats(r, n, k)
 	if err != nil {
 		return nil, err
 	}
-	var ch system.Chain
-	loop := ch.Sub(value.ExactMatrix(a), ch.Mul(value.ExactMatrix(b), value.ExactMatrix(x)))
-	return loop, ch.Err
+	return t.exactLoop(x)
 }
 
 // mayShift tells, to first order with a wide margin, whether a change of the gain can move a pole by more than spoiled.

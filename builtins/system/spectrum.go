@@ -17,8 +17,8 @@ import (
 // ExactOrder is the largest number of states for which exact answers are kept.
 const ExactOrder = 30
 
-// fewDigits is where floating eigenvalues are found again in higher precision.
-const fewDigits = 12
+// FewDigits is the relative error above which floating eigenvalues are found again in higher precision.
+const FewDigits = 1e-12
 
 // Root is an eigenvalue, pole or zero with its absolute error estimate. Exact parts are
 // set when the root is rational (or has rational parts); Multiplicity counts how often a
@@ -61,24 +61,47 @@ func Eigenvalues(m *value.Matrix) ([]Root, error) {
 	if m.IsExact() && n <= ExactOrder {
 		return RootsOf(m.Exact().CharacteristicPolynomial())
 	}
-	e, err := numeric.EigenWithin(m.Dense(), uncertainty(m))
+	roots, e, err := floatingEigenvalues(m.Dense(), uncertainty(m))
 	if err != nil {
-		return nil, Refused(err, "")
+		return nil, err
 	}
-	roots := make([]Root, n)
-	scale, worst := 0.0, 0.0
-	for i, v := range e.Values {
-		roots[i] = Root{Value: v, Err: e.ErrorOf[i], Multiplicity: 1}
-		scale = math.Max(scale, cmplx.Abs(v))
-		worst = math.Max(worst, e.ErrorOf[i])
-	}
-	if n <= ExactOrder && worst > scale*math.Pow(10, -fewDigits) {
+	if n <= ExactOrder && LargestError(roots) > FewDigits {
 		if better, err := sharpened(m, e); err == nil {
 			return better, nil
 		}
 	}
-	sortRoots(roots)
 	return roots, nil
+}
+
+// EigenvaluesWithin gives the eigenvalues of a real matrix whose entries are known to ±uncertainty.
+func EigenvaluesWithin(m, uncertainty *mat.Dense) ([]Root, error) {
+	roots, _, err := floatingEigenvalues(m, uncertainty)
+	return roots, err
+}
+
+func floatingEigenvalues(m, uncertainty *mat.Dense) ([]Root, *numeric.Eigensystem, error) {
+	e, err := numeric.EigenWithin(m, uncertainty)
+	if err != nil {
+		return nil, nil, Refused(err, "")
+	}
+	roots := make([]Root, len(e.Values))
+	for i, v := range e.Values {
+		roots[i] = Root{Value: v, Err: e.ErrorOf[i], Multiplicity: 1}
+	}
+	sortRoots(roots)
+	return roots, e, nil
+}
+
+// LargestError is the largest error of the roots, relative to the largest of them.
+func LargestError(roots []Root) float64 {
+	scale, worst := 0.0, 0.0
+	for _, r := range roots {
+		scale, worst = math.Max(scale, cmplx.Abs(r.Value)), math.Max(worst, r.Err)
+	}
+	if worst == 0 {
+		return 0
+	}
+	return worst / scale
 }
 
 // uncertainty is the matrix of the entries' error estimates, nil where there are none.
