@@ -37,8 +37,8 @@ type crossing struct {
 	frequency value.Number
 	unit      bool
 	factor    value.Number
-	degrees   float64
-	delay     float64
+	degrees   value.Number
+	delay     value.Number
 	channel   string
 }
 
@@ -46,7 +46,7 @@ type crossing struct {
 type marginSet struct {
 	rows           []crossing
 	up, down       *value.Number
-	degrees, delay float64
+	degrees, delay value.Number
 }
 
 func margins(c *value.Call) (value.Value, error) {
@@ -76,7 +76,7 @@ func margins(c *value.Call) (value.Value, error) {
 		r.Title = "the closed loop is NOT stable"
 		r.Notes = append(r.Notes, "the crossings of an unstable loop are no margins: they tell which change would have to happen first")
 	}
-	all := &marginSet{degrees: math.Inf(1), delay: math.Inf(1)}
+	all := &marginSet{degrees: none, delay: none}
 	for i := range m {
 		channel, name := p, ""
 		if m > 1 {
@@ -180,7 +180,7 @@ func channelMargins(p *value.Plant, name string) (*marginSet, error) {
 	if period > 0 {
 		num, den = toHalfPlane(g.Num, g.Den)
 	}
-	set := &marginSet{degrees: math.Inf(1), delay: math.Inf(1)}
+	set := &marginSet{degrees: none, delay: none}
 	unit, negative := crossingPolynomials(num, den)
 	for _, q := range []struct {
 		p    exact.Polynomial
@@ -266,14 +266,17 @@ func (s *marginSet) add(g exact.Rational, period, v float64, root system.Root, u
 	}
 	l := evaluate(g, v, period)
 	frequency := value.FloatErr(w, w*relative)
+	if !unit && real(l) >= 0 {
+		return
+	}
+	// how much faster than ω the loop changes there, relative to its size
+	const step = 1e-6
+	slope := cmplx.Abs(evaluate(g, v*(1+step), period)-l) / cmplx.Abs(l) / step
 	if unit {
-		s.unitCrossing(frequency, l, name)
+		s.unitCrossing(frequency, l, 2*slope*relative, name)
 		return
 	}
-	if real(l) >= 0 {
-		return
-	}
-	factor := value.FloatErr(1/cmplx.Abs(l), 8*relative/cmplx.Abs(l))
+	factor := value.FloatErr(1/cmplx.Abs(l), (8+2*slope)*relative/cmplx.Abs(l))
 	if x := root.Re; period == 0 && x != nil { // ω² is rational: L is real and rational there
 		if f, ok := exactFactor(g, x.Exact); ok {
 			factor = f
@@ -297,7 +300,8 @@ func exactFactor(g exact.Rational, x *big.Rat) (value.Number, bool) {
 	return value.Rat(f.Neg(f)), f.Sign() > 0
 }
 
-func (s *marginSet) unitCrossing(frequency value.Number, l complex128, name string) {
+// unitCrossing keeps a crossing |L| = 1; turn is the error of the phase of L in radians.
+func (s *marginSet) unitCrossing(frequency value.Number, l complex128, turn float64, name string) {
 	degrees := 180 + cmplx.Phase(l)*180/math.Pi
 	if degrees > 180 {
 		degrees -= 360
@@ -306,11 +310,13 @@ func (s *marginSet) unitCrossing(frequency value.Number, l complex128, name stri
 	if left < 0 {
 		left += 360
 	}
-	delay := math.Inf(1)
+	turn += 8 * 0x1p-52
+	delay := none
 	if w := frequency.Float64(); w > 0 {
-		delay = left * math.Pi / 180 / w
+		d := left * math.Pi / 180 / w
+		delay = value.FloatErr(d, turn/w+d*frequency.Err/w)
 	}
-	s.rows = append(s.rows, crossing{frequency: frequency, unit: true, degrees: degrees, delay: delay, channel: name})
+	s.rows = append(s.rows, crossing{frequency: frequency, unit: true, degrees: value.FloatErr(degrees, turn*180/math.Pi), delay: delay, channel: name})
 }
 
 // evaluate gives L at a point of the axis or circle, by exact arithmetic at the binary64 point of the axis.
@@ -360,7 +366,7 @@ func (s *marginSet) end(g exact.Rational, at *big.Rat, frequency value.Number, n
 	}
 	if new(big.Rat).Abs(l).Cmp(big.NewRat(1, 1)) == 0 {
 		f, _ := l.Float64()
-		s.unitCrossing(frequency, complex(f, 0), name)
+		s.unitCrossing(frequency, complex(f, 0), 0, name)
 	}
 	if l.Sign() < 0 {
 		factor := new(big.Rat).Inv(l)
@@ -374,10 +380,12 @@ func (s *marginSet) take(o *marginSet) {
 	for i := range o.rows {
 		r := &o.rows[i]
 		if r.unit {
-			if math.Abs(r.degrees) < math.Abs(s.degrees) {
+			if math.Abs(r.degrees.F) < math.Abs(s.degrees.F) {
 				s.degrees = r.degrees
 			}
-			s.delay = math.Min(s.delay, r.delay)
+			if r.delay.F < s.delay.F {
+				s.delay = r.delay
+			}
 			continue
 		}
 		f := r.factor.Float64()
@@ -392,13 +400,6 @@ func (s *marginSet) take(o *marginSet) {
 
 // none is the value of a margin that no crossing limits.
 var none = value.Number{F: math.Inf(1)}
-
-func orInfinite(x float64) value.Value {
-	if math.IsInf(x, 0) {
-		return none
-	}
-	return value.FloatErr(x, math.Abs(x)*1e-13)
-}
 
 // inSeconds gives a time its unit; a time that nothing limits stays infinite.
 func inSeconds(v value.Value) value.Value {
@@ -419,7 +420,7 @@ func (s *marginSet) report(r *value.Report, channels bool) {
 			row = append(row, value.Text(x.channel))
 		}
 		if x.unit {
-			row = append(row, x.frequency, value.Text("gain 1"), nil, value.FloatErr(x.degrees, math.Abs(x.degrees)*1e-13), orInfinite(x.delay))
+			row = append(row, x.frequency, value.Text("gain 1"), nil, x.degrees, x.delay)
 		} else {
 			row = append(row, x.frequency, value.Text("phase −180°"), x.factor, nil, nil)
 		}
@@ -433,7 +434,7 @@ func (s *marginSet) report(r *value.Report, channels bool) {
 		down = *s.down
 	}
 	r.Fields = []value.Named{{Name: "factor_up", Value: up}, {Name: "factor_down", Value: down},
-		{Name: "degrees", Value: orInfinite(s.degrees)}, {Name: "delay", Value: inSeconds(orInfinite(s.delay))}}
+		{Name: "degrees", Value: s.degrees}, {Name: "delay", Value: inSeconds(s.delay)}}
 }
 
 // distanceToMinusOne is 1/‖(I + L)⁻¹‖∞ of a stable loop.

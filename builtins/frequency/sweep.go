@@ -91,6 +91,7 @@ func sweep(c *value.Call) (value.Value, error) {
 		if err := f.AtInto(g, s); err != nil && !errors.Is(err, numeric.ErrAtPole) {
 			return nil, system.Refused(err, "plant")
 		}
+		off := responseError(f, s, g)
 		frequencies.Items = append(frequencies.Items, value.FloatErr(w, w*1e-15))
 		row := []value.Value{value.FloatErr(w, w*1e-15)}
 		for i := range outs {
@@ -99,16 +100,16 @@ func sweep(c *value.Call) (value.Value, error) {
 				a := cmplx.Abs(v)
 				phase := unwrapped(cmplx.Phase(v)*180/math.Pi, previous[i*m+j], k > 0)
 				previous[i*m+j] = phase
-				row = append(row, value.FloatErr(20*math.Log10(a), 1e-12), value.FloatErr(phase, math.Abs(phase)*1e-13))
+				row = append(row, value.FloatErr(20*math.Log10(a), 20*math.Log10(1+off/a)), value.FloatErr(phase, math.Min(off/a, math.Pi)*180/math.Pi))
 				if outs*m == 1 {
-					magnitudes.Items = append(magnitudes.Items, value.FloatErr(a, a*1e-13))
-					phases.Items = append(phases.Items, value.FloatErr(phase, math.Abs(phase)*1e-13))
-					values.Items = append(values.Items, value.Complex{C: v, Err: a * 1e-13})
+					magnitudes.Items = append(magnitudes.Items, value.FloatErr(a, off))
+					phases.Items = append(phases.Items, value.FloatErr(phase, math.Min(off/a, math.Pi)*180/math.Pi))
+					values.Items = append(values.Items, value.Complex{C: v, Err: off})
 				}
 			}
 		}
 		if outs*m > 1 {
-			values.Items = append(values.Items, complexMatrix(g))
+			values.Items = append(values.Items, complexMatrix(g, off))
 		}
 		r.Rows = append(r.Rows, row)
 	}
@@ -127,16 +128,30 @@ func unwrapped(phase, before float64, follow bool) float64 {
 	return phase + 360*math.Round((before-phase)/360)
 }
 
-func complexMatrix(g *mat.CDense) *value.Matrix {
+// responseError is the estimated error of the largest entry of the response g at s; 0 at a pole, where it is infinite.
+func responseError(f *numeric.FrequencyResponse, s complex128, g *mat.CDense) float64 {
+	certificate, err := f.Certify(s)
+	if err != nil {
+		return 0
+	}
+	largest := 0.0
+	rows, columns := g.Dims()
+	for i := range rows {
+		for j := range columns {
+			largest = math.Max(largest, cmplx.Abs(g.At(i, j)))
+		}
+	}
+	return largest * math.Pow(10, -certificate.Digits)
+}
+
+func complexMatrix(g *mat.CDense, off float64) *value.Matrix {
 	r, c := g.Dims()
 	re, im := make([]float64, r*c), make([]float64, r*c)
-	big := 0.0
 	for i := range r {
 		for j := range c {
 			v := g.At(i, j)
 			re[i*c+j], im[i*c+j] = real(v), imag(v)
-			big = math.Max(big, cmplx.Abs(v))
 		}
 	}
-	return value.FloatComplexMatrix(r, c, re, im, big*1e-13)
+	return value.FloatComplexMatrix(r, c, re, im, off)
 }

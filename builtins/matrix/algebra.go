@@ -2,6 +2,7 @@ package matrix
 
 import (
 	"math"
+	"math/big"
 
 	"gonum.org/v1/gonum/mat"
 
@@ -283,7 +284,37 @@ func exponential(c *value.Call) (value.Value, error) {
 	if m.Err > 0 {
 		x.Err += mat.Norm(e, 1) * m.Err * float64(n) * math.Max(1, cert.Condition)
 	}
+	if m.IsExact() {
+		x.Err += roundingInExponential(m, e)
+	}
 	return x, nil
+}
+
+// roundingInExponential estimates how far e = exp(A) is off because the exact entries of A were rounded to
+// binary64: the same rounding, a thousand times as large, is put on A once more.
+func roundingInExponential(m *value.Matrix, e *mat.Dense) float64 {
+	const times = 1 << 10
+	n, _ := m.Dims()
+	a, rounded := m.Dense(), false
+	for i := range n {
+		for j := range n {
+			d := new(big.Rat).SetFloat64(a.At(i, j))
+			if d.Sub(m.Exact().At(i, j), d).Sign() != 0 {
+				f, _ := d.Float64()
+				a.Set(i, j, a.At(i, j)+times*f)
+				rounded = true
+			}
+		}
+	}
+	if !rounded {
+		return 0
+	}
+	moved, _, err := numeric.Exponential(a)
+	if err != nil {
+		return 0
+	}
+	moved.Sub(moved, e)
+	return 2 * math.Max(math.Abs(mat.Max(moved)), math.Abs(mat.Min(moved))) / times
 }
 
 func eigenvectors(c *value.Call) (value.Value, error) {

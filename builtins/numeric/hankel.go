@@ -37,6 +37,12 @@ func HankelSingularValues(ctx context.Context, a, b, c *mat.Dense, sampled bool)
 	if err != nil {
 		return nil, err
 	}
+	return judgedHankel(ctx, factors, values, b, c, sampled)
+}
+
+// judgedHankel computes the values twice more in turned coordinates; how far these differ gives their digits.
+func judgedHankel(ctx context.Context, factors *gramianFactors, values []float64, b, c *mat.Dense, sampled bool) (*HankelValues, error) {
+	n := len(values)
 	differences, worst := make([]float64, n), 0.0
 	for attempt := 1; attempt <= 2; attempt++ {
 		turned, _ := factors.turned(b, c, attempt)
@@ -86,6 +92,8 @@ type Reduction struct {
 	A, B, C, D *mat.Dense
 	// Values are the Hankel singular values of the stable part, largest first.
 	Values []float64
+	// ValueDigits are the decimal digits of each that are estimated to hold.
+	ValueDigits []float64
 	// Kept counts the states kept, those of modes that do not decay included.
 	Kept int
 	// Modes are those that do not decay; they are kept as they are.
@@ -93,6 +101,7 @@ type Reduction struct {
 	// Bound is twice the sum of the distinct Hankel values left out: no gain of the
 	// difference, at any frequency, exceeds it.
 	Bound       float64
+	BoundError  float64
 	Certificate Certificate
 }
 
@@ -144,6 +153,11 @@ func (r *Reduction) truncate(ctx context.Context, split *modeSplit, k int, sampl
 		return err
 	}
 	r.Values = values
+	judged, err := judgedHankel(ctx, f, values, split.b1, split.c1, sampled)
+	if err != nil {
+		return err
+	}
+	r.ValueDigits = judged.Digits
 	floor := float64(f.n) * machineEpsilon * values[0]
 	asked := k
 	for k > 0 && values[k-1] <= floor {
@@ -159,6 +173,7 @@ func (r *Reduction) truncate(ctx context.Context, split *modeSplit, k int, sampl
 	for i := k; i < f.n; i++ {
 		if i == k || last-values[i] > 1e-10*last { // a repeated value counts once
 			r.Bound += 2 * values[i]
+			r.BoundError += 2 * values[i] * math.Pow(10, -judged.Digits[i])
 		}
 		last = values[i]
 	}

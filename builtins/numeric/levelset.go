@@ -11,8 +11,11 @@ import (
 
 // GainPeak is the largest gain of a stable plant over all frequencies, as a
 // bracket: Low is attained at Frequency, High is a level that no frequency passes.
+// Rounding is the estimated relative error of the gain there, with a margin: a
+// bracket that is to hold must be wider by it at both ends.
 type GainPeak struct {
 	Low, High   float64
+	Rounding    float64
 	Frequency   float64 // rad/s; +Inf when the gain is approached at infinite frequency
 	Certificate Certificate
 }
@@ -118,6 +121,9 @@ func (s *gainSearch) point(w float64) complex128 {
 	if s.period == 0 {
 		return complex(0, w)
 	}
+	if math.IsInf(w, 1) {
+		return -1 // the Nyquist frequency
+	}
 	// z = (α + iw)/(α − iw) = e^(iθ) with tan(θ/2) = w/α.
 	theta := 2 * math.Atan(w/s.alpha)
 	return complex(math.Cos(theta), math.Sin(theta))
@@ -125,7 +131,7 @@ func (s *gainSearch) point(w float64) complex128 {
 
 // gain is the largest singular value at frequency w ≥ 0 of the continuous frame.
 func (s *gainSearch) gain(w float64) float64 {
-	if math.IsInf(w, 1) {
+	if math.IsInf(w, 1) && s.period == 0 {
 		return largestSingularValue(s.d)
 	}
 	if err := s.response.AtInto(s.value, s.point(w)); err != nil {
@@ -338,13 +344,14 @@ func (s *gainSearch) result() (*GainPeak, error) {
 	}
 	width := (peak.High - peak.Low) / peak.High
 	peak.Certificate.Digits = DigitsOf(width, 1)
-	if !math.IsInf(s.at, 1) {
+	if !math.IsInf(s.at, 1) || s.period > 0 {
 		at, err := s.response.Certify(s.point(s.at))
 		if err != nil {
 			return nil, err
 		}
 		peak.Certificate.Condition, peak.Certificate.Residual = at.Condition, at.Residual
 		peak.Certificate.Digits = math.Min(peak.Certificate.Digits, at.Digits)
+		peak.Rounding = 4 * math.Pow(10, -at.Digits)
 	}
 	return peak, nil
 }

@@ -58,13 +58,13 @@ func hankelSingularValues(c *value.Call) (value.Value, error) {
 	if err != nil {
 		return nil, system.Refused(err, "plant")
 	}
-	return hankelList(h), nil
+	return hankelList(h.Values, h.Digits), nil
 }
 
-func hankelList(h *numeric.HankelValues) *value.List {
+func hankelList(found, digits []float64) *value.List {
 	l := &value.List{}
-	for i, v := range h.Values {
-		l.Items = append(l.Items, value.FloatErr(v, v*pow10(-h.Digits[i])))
+	for i, v := range found {
+		l.Items = append(l.Items, value.FloatErr(v, v*pow10(-digits[i])))
 	}
 	return l
 }
@@ -89,13 +89,9 @@ func reduced(c *value.Call) (value.Value, error) {
 	if r.Kept > 0 {
 		q.A, q.B, q.C = value.FromDense(r.A, digits), value.FromDense(r.B, digits), value.FromDense(r.C, digits)
 	}
-	values := &value.List{}
-	for _, v := range r.Values {
-		values.Items = append(values.Items, value.FloatErr(v, v*1e-12))
-	}
 	q.Extra = []value.Named{
-		{Name: "bound", Value: value.FloatErr(r.Bound, r.Bound*1e-12)},
-		{Name: "hankel_singular_values", Value: values},
+		{Name: "bound", Value: value.FloatErr(r.Bound, r.BoundError)},
+		{Name: "hankel_singular_values", Value: hankelList(r.Values, r.ValueDigits)},
 	}
 	return q, nil
 }

@@ -133,12 +133,28 @@ func floatingZeros(c *value.Call, p *value.Plant) (*ZeroSets, error) {
 	for i, v := range f.Zeros {
 		z.Transmission = append(z.Transmission, Root{Value: v, Err: f.ErrorOf[i], Multiplicity: 1})
 	}
-	z.Input, z.Output, z.Both = decoupling(f.InputDecoupling, f.OutputDecoupling)
+	poles, err := EigenvaluesWithin(p.A.Dense(), uncertainty(p.A))
+	if err != nil {
+		return nil, err
+	}
+	z.Input, z.Output, z.Both = decoupling(f.InputDecoupling, f.OutputDecoupling, poles)
 	return z, nil
 }
 
+// asPole is a decoupling zero with the error of the pole it is, as far as the two differ and beyond.
+func asPole(v complex128, poles []Root) Root {
+	r := Root{Value: v, Err: cmplx.Abs(v), Multiplicity: 1}
+	nearest := math.Inf(1)
+	for _, p := range poles {
+		if d := cmplx.Abs(p.Value - v); d < nearest {
+			nearest, r.Err = d, d+p.Err
+		}
+	}
+	return r
+}
+
 // decoupling tells those that occur in both lists from the rest.
-func decoupling(input, output []complex128) (in, out, both []Root) {
+func decoupling(input, output []complex128, poles []Root) (in, out, both []Root) {
 	used := make([]bool, len(output))
 	for _, v := range input {
 		match := -1
@@ -148,7 +164,7 @@ func decoupling(input, output []complex128) (in, out, both []Root) {
 				break
 			}
 		}
-		r := Root{Value: v, Err: 1e-12 * cmplx.Abs(v), Multiplicity: 1}
+		r := asPole(v, poles)
 		if match < 0 {
 			in = append(in, r)
 			continue
@@ -158,7 +174,7 @@ func decoupling(input, output []complex128) (in, out, both []Root) {
 	}
 	for j, w := range output {
 		if !used[j] {
-			out = append(out, Root{Value: w, Err: 1e-12 * cmplx.Abs(w), Multiplicity: 1})
+			out = append(out, asPole(w, poles))
 		}
 	}
 	return in, out, both
