@@ -32,9 +32,15 @@ type answer struct {
 	Denominator []string
 }
 
-// ask puts problems to testdata/references/reference.py. Without Python, SciPy, mpmath and
-// sympy the test is skipped, or fails where REQUIRE_REFERENCES is set.
+// ask puts problems to testdata/references/reference.py.
 func ask(t *testing.T, problems []problem) []answer {
+	t.Helper()
+	return askScript(t, "reference.py", problems)
+}
+
+// askScript puts problems to a script of testdata/references. Without Python, SciPy, mpmath and
+// sympy the test is skipped, or fails where REQUIRE_REFERENCES is set.
+func askScript(t *testing.T, script string, problems []problem) []answer {
 	t.Helper()
 	missing := func(why string) {
 		if os.Getenv("REQUIRE_REFERENCES") != "" {
@@ -55,7 +61,7 @@ func ask(t *testing.T, problems []problem) []answer {
 	if err != nil {
 		t.Fatal(err)
 	}
-	c := exec.Command(python, "../testdata/references/reference.py")
+	c := exec.Command(python, "../testdata/references/"+script)
 	c.Env = append(os.Environ(), "OPENBLAS_NUM_THREADS=1")
 	c.Stdin = bytes.NewReader(data)
 	var out, errOut bytes.Buffer

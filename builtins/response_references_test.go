@@ -187,6 +187,8 @@ func TestMarginsBesideMpmath(t *testing.T) {
 		{"400*(s^2 + 0.2*s + 25)/(s*(s + 8)*(s^2 + 0.05*s + 60))", []any{400, 80, 10000}, []any{1, "8.05", "60.4", 480, 0}, nil},
 		{"-6/((s - 1)*(s + 4))*(1 - s/20)*(-1)", []any{"-0.3", 6}, []any{1, 3, -4}, nil},
 		{"5*(s + 1)/(s^2*(s/10 + 1)^2)", []any{5, 5}, []any{"0.01", "0.2", 1, 0, 0}, nil},
+		{"(0.733*s^3 + 0.0101*s^2 + 105*s + 1.17)/(s^6 + 150*s^5 + 9750*s^4 + 246000*s^3 + 513000*s^2 + 584*s + 452)",
+			[]any{"0.733", "0.0101", 105, "1.17"}, []any{1, 150, 9750, 246000, 513000, 584, 452}, nil}, // steep at its resonances
 		{"every 50 ms: 0.02*(z + 0.9)/((z - 1)*(z - 0.7))", []any{"0.02", "0.018"}, []any{1, "-1.7", "0.7"}, problem{"every": 0.05, "to": 62.8}},
 	}
 	var problems []problem
@@ -238,6 +240,8 @@ func TestMarginsBesideMpmath(t *testing.T) {
 			}
 			if got := number(row[column]); !(math.Abs(got-nearest) <= 1e-9*math.Max(1, math.Abs(nearest))) {
 				t.Errorf("%s: at %.6g the margin is %.12g, mpmath gives %.12g", loops[k].text, w, got, nearest)
+			} else if claimed, held := claims(row[column])[0].digits, digitsOf(math.Abs(got-nearest)/math.Abs(nearest)); math.Min(claimed, 15) > held+1 {
+				t.Errorf("%s: at %.6g the margin claims %.1f digits, %.1f hold", loops[k].text, w, claimed, held)
 			}
 		}
 		if all := (len(gains) + len(phases)) / 2; rows != all || all == 0 {

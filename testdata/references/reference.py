@@ -252,8 +252,10 @@ def margins(p):
         if (abs(u) - 1) * (abs(v) - 1) < 0:
             w = mp.findroot(lambda w: abs(loop(w)) - 1, (grid[i - 1], grid[i]), solver="anderson", tol=1e-50, maxsteps=200)
             found[0] += [float(w), float(mp.arg(-loop(w)) * 180 / mp.pi)]
-        if mp.im(u) * mp.im(v) < 0 and mp.re(u) < 0 and mp.re(v) < 0:
+        if mp.im(u) * mp.im(v) < 0 and (mp.re(u) < 0 or mp.re(v) < 0):
             w = mp.findroot(lambda w: mp.im(loop(w)), (grid[i - 1], grid[i]), solver="anderson", tol=1e-50, maxsteps=200)
+            if mp.re(loop(w)) >= 0:
+                continue
             found[1] += [float(w), float(1 / abs(loop(w)))]
     return found
 
