@@ -375,3 +375,25 @@ func TestExponentialOfRoundedData(t *testing.T) {
 		t.Errorf("claims %.2f digits, %.2f hold", claimed, held)
 	}
 }
+
+// TestOverflowIsRefused: what leaves the range of binary64 numbers is an error, not a number; what underflows is 0 without harm.
+func TestOverflowIsRefused(t *testing.T) {
+	for _, text := range []string{
+		"solve(floating([[1e-300]]), [[1e300]])",
+		"lyapunov(floating([[-1e-300]]), [[1e300]])",
+		"sylvester(floating([[1e-300]]), [[1e-300]], [[1e300]])",
+		"noise_gain(plant(floating([[-1e-300]]), [[1e300]], [[1]]))",
+		"largest_gain(plant(floating([[-1e-300]]), [[1e300]], [[1]]))",
+		"hankel_singular_values(plant(floating([[-1e-300]]), [[1e200]], [[1e200]]))",
+		"determinant(floating([[1e200, 0], [0, 1e200]]))",
+	} {
+		j := judged{text: "X = " + text}
+		if j.answered(); j.refused == "" {
+			t.Errorf("%s gives %v", text, j.x)
+		}
+	}
+	held := bound(t, "X = sampled(plant(floating([[-1]]), [[1]]), every: 1000).B", "X").(*value.Matrix)
+	if re, _ := held.Floats(); re[0] != 1 || held.Digits() < 12 {
+		t.Errorf("a thousand time constants: %v with %.1f digits", re[0], held.Digits())
+	}
+}

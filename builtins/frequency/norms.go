@@ -56,7 +56,7 @@ func largestGain(c *value.Call) (value.Value, error) {
 	return &value.Report{Title: "largest gain", Fields: []value.Named{
 		{Name: "value", Value: value.FloatErr(mid, (g.High-g.Low)/2+mid*math.Pow(10, -g.Certificate.Digits))},
 		{Name: "frequency", Value: w},
-		{Name: "low", Value: value.Float(g.Low * (1 - g.Rounding))},
+		{Name: "low", Value: value.Float(g.Low * math.Max(0, 1-g.Rounding))},
 		{Name: "high", Value: value.Float(g.High * (1 + g.Rounding))},
 	}, Notes: g.Certificate.Notes}, nil
 }

@@ -162,8 +162,19 @@ func determinant(c *value.Call) (value.Value, error) {
 	lu.Factorize(d)
 	det := lu.Det()
 	// relative error of the determinant: n·(rounding + data)·κ, to first order
-	rel := float64(n) * (0x1p-52 + relativeOf(m)) * math.Max(1, lu.Cond())
-	return value.FloatErr(det, math.Abs(det)*math.Min(rel, 1e30)), nil
+	rounding := float64(n) * (0x1p-52 + relativeOf(m))
+	size := math.Abs(det)
+	switch {
+	case math.IsInf(det, 0):
+		return nil, value.Errf(diag.Numerical, "A", "the determinant is larger than 1.8e308, the largest floating number")
+	case det == 0: // what rounding leaves open, by Hadamard's bound
+		size = rounding
+		for i := range n {
+			size *= mat.Norm(d.RowView(i), 2)
+		}
+		return value.FloatErr(0, size), nil
+	}
+	return value.FloatErr(det, size*math.Min(rounding*math.Max(1, lu.Cond()), 1e30)), nil
 }
 
 func relativeOf(m *value.Matrix) float64 {

@@ -74,6 +74,9 @@ func plantShapes(a, b, c, d *mat.Dense) (n, m, p int, err error) {
 	if n > 0 {
 		_, m = sizeOf(b)
 		p, _ = sizeOf(c)
+		if m == 0 || p == 0 {
+			return 0, 0, 0, withoutChannels(m, p)
+		}
 		if err := Shaped("B", b, n, m); err != nil {
 			return 0, 0, 0, err
 		}
@@ -87,7 +90,7 @@ func plantShapes(a, b, c, d *mat.Dense) (n, m, p int, err error) {
 		}
 	}
 	if m == 0 || p == 0 {
-		return 0, 0, 0, fmt.Errorf("the plant has %d inputs and %d outputs; it needs one of each at least", m, p)
+		return 0, 0, 0, withoutChannels(m, p)
 	}
 	for _, named := range []struct {
 		name string
@@ -98,6 +101,10 @@ func plantShapes(a, b, c, d *mat.Dense) (n, m, p int, err error) {
 		}
 	}
 	return n, m, p, nil
+}
+
+func withoutChannels(inputs, outputs int) error {
+	return fmt.Errorf("the plant has %d inputs and %d outputs; it needs one of each at least", inputs, outputs)
 }
 
 // At is the p×m response at s. At a pole it returns ErrAtPole beside it.

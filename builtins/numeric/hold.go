@@ -16,7 +16,7 @@ import (
 // exponential of [[A, B], [0, 0]]·T. B_d is a sum, never a difference, so it is
 // correct relative to itself for any T, and A may be singular. T is in seconds
 // and must be positive; b may be empty. The certificate's digits are the fewer
-// of the two blocks', each relative to its own largest entry.
+// of the two blocks', each relative to its own largest entry; where A_d underflows, those of B_d.
 //
 // G. F. Franklin, J. D. Powell, M. L. Workman, Digital Control of Dynamic
 // Systems, 3rd edition 1998, section 4.3; C. Van Loan, IEEE Trans. Automat.
@@ -44,6 +44,9 @@ func Hold(a, b *mat.Dense, period float64) (ad, bd *mat.Dense, certificate Certi
 	}
 	ad, bd = blockOf(result.value, size, 0, n, 0, n), blockOf(result.value, size, 0, n, n, size)
 	certificate = worse(result.certificate(0), result.certificate(1))
+	if mat.Norm(ad, 1) == 0 { // below the smallest number: nothing is known of its digits, and B_d does not need them
+		certificate.Digits = result.certificate(1).Digits
+	}
 	certificate.Method = "exponential of [[A, B], [0, 0]]·T: " + result.method
 	return ad, bd, certificate, nil
 }

@@ -330,6 +330,9 @@ func (s *gainSearch) golden(lo, hi float64, rounds int) float64 {
 
 // result sharpens the frequency and states the digits.
 func (s *gainSearch) result() (*GainPeak, error) {
+	if math.IsInf(s.low, 1) {
+		return nil, errors.New("the largest gain is beyond the range of numbers")
+	}
 	s.sharpen()
 	peak := &GainPeak{Low: s.low, High: math.Max(s.high, s.low), Frequency: s.at}
 	peak.Certificate = Certificate{Method: "level sets of the Hamiltonian", Digits: mostDigits}
@@ -411,6 +414,9 @@ func NoiseGain(ctx context.Context, a, b, c, d *mat.Dense, sampled bool) (float6
 			return 0, Certificate{}, err
 		}
 		difference = math.Max(difference, math.Abs(gain-math.Hypot(direct, g.outputSize(turned.c))))
+	}
+	if gain-gain != 0 {
+		return 0, Certificate{}, errors.New("the noise gain is beyond the range of numbers")
 	}
 	return gain, f.certificate(difference, gain), nil
 }

@@ -159,6 +159,9 @@ func (s *Session) callBuiltin(f *frame, b *value.Builtin, site *callSite, args [
 		return nil, pointed(failure, b.Name, spans, site)
 	}
 	f.task.held = held
+	if err := value.Finite(v); err != nil {
+		return nil, asError(err, b.Name).At(site.callee)
+	}
 	if err := f.task.charge(sizeOf(v)); err != nil {
 		return nil, asError(err, b.Name).At(site.callee)
 	}

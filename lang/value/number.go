@@ -207,3 +207,34 @@ func timesPi(n Number, power int) (Number, error) {
 	f, _ := r.Float64()
 	return settle(f, 0)
 }
+
+// Finite refuses a floating result that overflowed on the way: a number or a member of a list that is none,
+// a matrix with an entry that is none or infinite. A single number may be infinite.
+func Finite(v Value) error {
+	switch v := v.(type) {
+	case Number:
+		if v.Exact == nil && math.IsNaN(v.F) {
+			return notANumber()
+		}
+	case *List:
+		for _, x := range v.Items {
+			if n, ok := x.(Number); ok {
+				if err := Finite(n); err != nil {
+					return err
+				}
+			}
+		}
+	case *Matrix:
+		if v.IsExact() {
+			return nil
+		}
+		for _, part := range [][]float64{v.re, v.im} {
+			for _, x := range part {
+				if x-x != 0 {
+					return overflow()
+				}
+			}
+		}
+	}
+	return nil
+}
