@@ -13,6 +13,7 @@ import (
 	"gonum.org/v1/gonum/mat"
 
 	"gainwright/builtins"
+	"gainwright/builtins/system"
 	"gainwright/lang/diag"
 	"gainwright/lang/eval"
 	"gainwright/lang/value"
@@ -395,5 +396,21 @@ func TestOverflowIsRefused(t *testing.T) {
 	held := bound(t, "X = sampled(plant(floating([[-1]]), [[1]]), every: 1000).B", "X").(*value.Matrix)
 	if re, _ := held.Floats(); re[0] != 1 || held.Digits() < 12 {
 		t.Errorf("a thousand time constants: %v with %.1f digits", re[0], held.Digits())
+	}
+}
+
+// TestPowersOfManyStatesAreFloating: beyond the exact order powers of decimals are not carried exactly, which takes minutes at 400 states.
+func TestPowersOfManyStatesAreFloating(t *testing.T) {
+	n := system.ExactOrder + 10
+	r := draw{rand.New(rand.NewPCG(4, 2))}
+	m := r.normal(n, n)
+	m.Apply(func(_, _ int, v float64) float64 { return math.Round(100*v) / 1000 }, m)
+	a, err := json.Marshal(rowsOf(m))
+	if err != nil {
+		t.Fatal(err)
+	}
+	x := bound(t, fmt.Sprintf("X = reachability(%s, column(identity(%d), 1)).matrix", a, n), "X").(*value.Matrix)
+	if _, columns := x.Dims(); columns != n || x.IsExact() {
+		t.Errorf("%d columns, exact: %v", columns, x.IsExact())
 	}
 }

@@ -287,7 +287,11 @@ func companionForm(p *value.Plant, dual bool) (t, inverse *value.Matrix, err err
 	if d.rank < n {
 		return nil, nil, value.Errf(diag.Numerical, "plant", "no %s: there is a mode that no %s %s: %s", word, who, verb, system.RootText(d.missing))
 	}
-	t, err = luenbergerForm(q.a, q.b, d.indices)
+	a, b := q.a, q.b
+	if !q.exact() {
+		a, b = a.Floating(), b.Floating()
+	}
+	t, err = luenbergerForm(a, b, d.indices)
 	if err != nil {
 		return nil, nil, err
 	}

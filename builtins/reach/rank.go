@@ -252,9 +252,13 @@ func rankReport(c *value.Call, dual bool) (value.Value, error) {
 func (p *pair) matrix() value.Value {
 	n, _ := p.a.Dims()
 	var ch system.Chain
-	blocks := []*value.Matrix{p.b}
+	a, b := p.a, p.b
+	if !p.exact() { // powers of many exact states would be the work of a minute
+		a, b = a.Floating(), b.Floating()
+	}
+	blocks := []*value.Matrix{b}
 	for i := 1; i < n; i++ {
-		blocks = append(blocks, ch.Mul(p.a, blocks[i-1]))
+		blocks = append(blocks, ch.Mul(a, blocks[i-1]))
 	}
 	m := system.Block([][]*value.Matrix{blocks})
 	if p.dual {
