@@ -62,7 +62,13 @@ func judgedProblems(count int) []judged {
 		p := shared()
 		p["B"] = rowsOf(one)
 		add("largest gain", p, "largest_gain("+plantText(a, one, c, sampled)+")")
+		p = shared()
+		p["B"] = rowsOf(one)
+		add("final value", p, "figures(response("+plantText(a, one, c, sampled)+")).final_value")
 		if !sampled {
+			p = shared()
+			p["B"] = rowsOf(one)
+			add("settling", p, "figures(response("+plantText(a, one, c, sampled)+")).settling")
 			p = shared()
 			p["B"] = rowsOf(one)
 			w := math.Pow(10, 4*r.Float64()-3)
@@ -177,6 +183,8 @@ func claims(v value.Value) []claim {
 	switch v := value.Force(v).(type) {
 	case value.Number:
 		return []claim{{complex(v.Float64(), 0), v.Digits()}}
+	case value.Quantity:
+		return claims(v.Magnitude)
 	case value.Complex:
 		if v.IsExact() {
 			return []claim{{v.Complex128(), math.Inf(1)}}
@@ -195,7 +203,7 @@ func claims(v value.Value) []claim {
 // isNumbers tells an answer from what is said in its place.
 func isNumbers(v value.Value) bool {
 	switch v.(type) {
-	case value.Number, value.Complex, *value.List, *value.Matrix, *value.Gain, *value.Report:
+	case value.Number, value.Quantity, value.Complex, *value.List, *value.Matrix, *value.Gain, *value.Report:
 		return true
 	}
 	return false
@@ -301,6 +309,9 @@ func TestClaimedDigits(t *testing.T) {
 			rows, columns := g.Values.Dims()
 			j.p["K"] = rowsOf(mat.NewDense(rows, columns, re))
 			j.x = &value.List{Items: g.Poles}
+		}
+		if kind == "settling" {
+			j.p["near"] = real(numbers(j.x)[0])
 		}
 		if kind == "largest gain" {
 			r := j.x.(*value.Report)

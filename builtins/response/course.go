@@ -164,7 +164,7 @@ func (q *request) pointOfRest(row int) (final value.Number, ok bool, err error) 
 	if q.drive.kind == step {
 		amp = q.drive.amplitude
 	}
-	rest := make([]float64, n)
+	rest, wrong := make([]float64, n), 0.0
 	if n > 0 && amp != 0 {
 		lhs, rhs := mat.NewDense(n, n, nil), mat.NewDense(n, 1, nil)
 		for i := range n {
@@ -177,11 +177,11 @@ func (q *request) pointOfRest(row int) (final value.Number, ok bool, err error) 
 			}
 			rhs.Set(i, 0, q.closedB.at(i, q.drive.channel)*amp)
 		}
-		var x mat.Dense
-		if err := x.Solve(lhs, rhs); err != nil && math.IsInf(float64(conditionOf(err)), 1) {
+		x, errors, ok := restOf(lhs, rhs, q.closedC.row(row))
+		if !ok {
 			return final, false, nil
 		}
-		copy(rest, x.RawMatrix().Data)
+		rest, wrong = x, errors[0]
 	}
 	level := func(row int) float64 {
 		y := dot(q.closedC.row(row), rest)
@@ -196,6 +196,5 @@ func (q *request) pointOfRest(row int) (final value.Number, ok bool, err error) 
 		}
 	}
 	y := level(row)
-	scale := largest(rest) * largest(q.closedC.row(row))
-	return value.FloatErr(y, 1e-13*(math.Abs(y)+scale)), true, nil
+	return value.FloatErr(y, math.Max(wrong, 1e-15*math.Abs(y))), true, nil
 }

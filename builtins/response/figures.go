@@ -125,7 +125,8 @@ func (c *course) wholeFigures(f *outputFigures, trace *value.Trace, i int, start
 		return nil
 	}
 	f.final, f.hidden = quantity(t.final, trace.Unit), t.hidden
-	err = f.fill(t.final, start, within, t.scan, 1e-11, math.Inf(1), largest(trace.Values))
+	relative := math.Max(1e-11, t.motionError(t.final.Float64()-start, c.q.clock > 0))
+	err = f.fill(t.final, start, within, t.scan, relative, math.Inf(1), largest(trace.Values))
 	if err == errUnlocated {
 		f.hidden = err.Error()
 		return nil
@@ -208,7 +209,7 @@ func (r *reading) settling(relative, within, until float64) value.Value {
 	if r.outside {
 		return value.Text(fmt.Sprintf("not within %.4g %% by %s", 100*within, seconds(until)))
 	}
-	return timeOf(r.settledAt, relative/within*0.1)
+	return timeOf(r.settledAt, relative/within*0.5)
 }
 
 // band is what the signal settles into.

@@ -306,13 +306,13 @@ func (q *request) directTail(m *motion) (*tail, bool) {
 		}
 		rhs.Set(i, 0, m.a.at(i, n))
 	}
-	var rest mat.Dense
-	if err := rest.Solve(lhs, rhs); err != nil && math.IsInf(float64(conditionOf(err)), 1) {
+	rest, wrong, ok := restOf(lhs, rhs, m.c.v[:n])
+	if !ok {
 		return nil, false
 	}
-	t.final = value.FloatErr(m.c.v[n]+dot(m.c.v[:n], rest.RawMatrix().Data), 0)
+	t.final = value.FloatErr(m.c.v[n]+dot(m.c.v[:n], rest), wrong[0])
 	for i := range n {
-		t.d[i] -= rest.At(i, 0)
+		t.d[i] -= rest[i]
 	}
 	return t, true
 }
@@ -382,17 +382,26 @@ func (t *tail) takeRestOff(at complex128, kept int, digits float64) error {
 		}
 	}
 	inner, scale, out := 0.0, 0.0, 0.0
+	driven, seen := 0.0, 0.0 // the sums without cancellation
 	for i := range n {
 		v, w := real(e.Right.At(i, best)), real(e.Left.At(i, best))
 		inner += w * t.d[i]
 		scale += w * v
 		out += t.c[i] * v
+		driven += math.Abs(w * t.d[i])
+		seen += math.Abs(t.c[i] * v)
 	}
 	part := inner / scale
 	for i := range n {
 		t.d[i] -= part * real(e.Right.At(i, best))
 	}
 	rest := out * part
-	t.final = value.FloatErr(rest, math.Abs(rest)*math.Pow(10, -math.Max(digits-1, 1)))
+	turned := float64(n) * 0x1p-52 // how far rounding turns the mode's vectors: by the poles' errors over their distance
+	for j, p := range e.Values {
+		if j != best {
+			turned = math.Max(turned, e.ErrorOf[j]/cmplx.Abs(p-e.Values[best]))
+		}
+	}
+	t.final = value.FloatErr(rest, math.Max(math.Abs(rest)*math.Pow(10, -math.Max(digits-1, 1)), math.Abs(driven*seen/scale)*turned))
 	return nil
 }

@@ -143,6 +143,21 @@ def zeros(p):
     return mp.polyroots(found[::-1], maxsteps=500, extraprec=500) if len(found) > 1 else []
 
 
+def rest(p):
+    a, b, c = (matrix(p[k]) for k in "ABC")
+    return (c * mp.lu_solve(mp.eye(a.rows) - a if p["sampled"] else -a, b))[0, 0]
+
+
+def settling(p):
+    """The time near the given one at which the step response crosses 2 % of its final value, by its modes."""
+    a, b, c = (matrix(p[k]) for k in "ABC")
+    poles, vectors = ([a[0, 0]], mp.eye(1)) if a.rows == 1 else mp.eig(a)
+    driven, seen = mp.lu_solve(vectors, b), c * vectors
+    parts = [seen[0, k] * driven[k, 0] / poles[k] for k in range(a.rows)]
+    off = lambda t: abs(mp.re(sum(g * mp.exp(pole * t) for g, pole in zip(parts, poles)))) - abs(rest(p)) / 50
+    return mp.findroot(off, (p["near"] * mp.mpf("0.999999"), p["near"] * mp.mpf("1.000001")), tol=1e-40)
+
+
 def solve(p):
     kind = p["kind"]
     mp.mp.dps = {"solve": DIGITS, "sylvester": DIGITS, "response": DIGITS, "noise gain": DIGITS, "largest gain": 40}.get(kind, 100)
@@ -199,6 +214,10 @@ def solve(p):
     if kind == "gramian":
         b = matrix(p["B"])
         return rows(lyapunov(a, b * b.T, sampled))
+    if kind == "final value":
+        return numbers([rest(p)])
+    if kind == "settling":
+        return numbers([settling(p)])
     if kind == "hankel":
         b, c = matrix(p["B"]), matrix(p["C"])
         return numbers([mp.sqrt(abs(x)) for x in eigenvalues(lyapunov(a, b * b.T, sampled) * lyapunov(a.T, c.T * c, sampled))])
