@@ -88,10 +88,12 @@ func sweep(c *value.Call) (value.Value, error) {
 		if t > 0 {
 			s = cmplx.Exp(complex(0, w*t))
 		}
-		if err := f.AtInto(g, s); err != nil && !errors.Is(err, numeric.ErrAtPole) {
+		off := 0.0 // the error of the largest entry; at a pole it is infinite
+		if err := f.AtInto(g, s); err == nil {
+			off = f.ErrorAt(s)
+		} else if !errors.Is(err, numeric.ErrAtPole) {
 			return nil, system.Refused(err, "plant")
 		}
-		off := responseError(f, s, g)
 		frequencies.Items = append(frequencies.Items, value.FloatErr(w, w*1e-15))
 		row := []value.Value{value.FloatErr(w, w*1e-15)}
 		for i := range outs {
@@ -126,22 +128,6 @@ func unwrapped(phase, before float64, follow bool) float64 {
 		return phase
 	}
 	return phase + 360*math.Round((before-phase)/360)
-}
-
-// responseError is the estimated error of the largest entry of the response g at s; 0 at a pole, where it is infinite.
-func responseError(f *numeric.FrequencyResponse, s complex128, g *mat.CDense) float64 {
-	certificate, err := f.Certify(s)
-	if err != nil {
-		return 0
-	}
-	largest := 0.0
-	rows, columns := g.Dims()
-	for i := range rows {
-		for j := range columns {
-			largest = math.Max(largest, cmplx.Abs(g.At(i, j)))
-		}
-	}
-	return largest * math.Pow(10, -certificate.Digits)
 }
 
 func complexMatrix(g *mat.CDense, off float64) *value.Matrix {

@@ -10,7 +10,7 @@ import (
 
 // benchOrders are the orders of the speed table; testdata/speed_reference.py
 // times SciPy on matrices drawn alike.
-var benchOrders = []int{4, 5, 10, 50, 100, 200, 400}
+var benchOrders = []int{4, 5, 10, 20, 50, 100, 200, 400}
 
 // benchMatrix is dense, normally distributed, with 1-norm 10.
 func benchMatrix(n int) *mat.Dense {

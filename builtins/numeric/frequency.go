@@ -20,6 +20,7 @@ var ErrAtPole = errors.New("the point lies on a pole, where the response is infi
 type FrequencyResponse struct {
 	n, m, p    int
 	hessenberg []float64
+	norm       float64    // its 1-norm
 	input      *mat.Dense // n×m
 	output     *mat.Dense // p×n
 	through    *mat.Dense // p×m
@@ -56,7 +57,7 @@ func NewFrequencyResponse(a, b, c, d *mat.Dense) (*FrequencyResponse, error) {
 		}
 	}
 	q := hessenbergOf(n, w)
-	r.hessenberg, r.input = w, orthogonalProduct(n, q, input)
+	r.hessenberg, r.norm, r.input = w, oneNorm(n, w), orthogonalProduct(n, q, input)
 	r.output = mat.NewDense(p, n, nil)
 	r.output.Mul(output, mat.NewDense(n, n, q))
 	r.pencil = newHessenbergPencil(n, w)
@@ -179,7 +180,7 @@ const poleStep = 1e-6
 // an entry that at least grows by half again when the distance is halved is.
 func (r *FrequencyResponse) atPole(dst *mat.CDense, s complex128) error {
 	far, near := mat.NewCDense(r.p, r.m, nil), mat.NewCDense(r.p, r.m, nil)
-	step := poleStep * (cmplx.Abs(s) + math.Min(1, oneNorm(r.n, r.hessenberg)))
+	step := poleStep * (cmplx.Abs(s) + math.Min(1, r.norm))
 	if step == 0 {
 		step = poleStep
 	}
@@ -232,7 +233,7 @@ func (r *FrequencyResponse) Certify(s complex128) (Certificate, error) {
 		return certificate, ErrAtPole
 	}
 	inverse := r.pencil.inverseNorm()
-	norm := oneNorm(r.n, r.hessenberg) + cmplx.Abs(s)
+	norm := r.norm + cmplx.Abs(s)
 	certificate.Condition = inverse * norm
 	dst := mat.NewCDense(r.p, r.m, nil)
 	r.fill(dst)
@@ -242,12 +243,8 @@ func (r *FrequencyResponse) Certify(s complex128) (Certificate, error) {
 			largest = math.Max(largest, cmplx.Abs(dst.At(i, j)))
 		}
 	}
-	lost := 0.0
-	for j := range r.m {
-		residual, amplified := r.columnResidual(s, j, norm)
-		certificate.Residual = math.Max(certificate.Residual, residual)
-		lost = math.Max(lost, amplified)
-	}
+	lost, residual := r.lost(s, norm)
+	certificate.Residual = residual
 	if largest > 0 {
 		certificate.Digits = DigitsOf(lost/largest, 1)
 	} else if lost > 0 {
@@ -256,10 +253,41 @@ func (r *FrequencyResponse) Certify(s complex128) (Certificate, error) {
 	return certificate, nil
 }
 
-// columnResidual solves for column j of the states' response, and returns its
-// relative residual and a first-order bound of the error it leaves in the
-// outputs, |C·(sI − H)⁻¹|·(ε·‖sI − H‖·‖x‖).
-func (r *FrequencyResponse) columnResidual(s complex128, j int, norm float64) (residual, amplified float64) {
+// ErrorAt estimates the error of the largest entry of the response that AtInto took last, at s and not at a pole:
+// what Certify counts, without the condition number.
+func (r *FrequencyResponse) ErrorAt(s complex128) float64 {
+	if r.n == 0 {
+		return 0
+	}
+	lost, _ := r.lost(s, r.norm+cmplx.Abs(s))
+	return lost
+}
+
+// lost bounds to first order what the relative residuals of the states' responses leave in the outputs,
+// ‖C·(sI − H)⁻¹‖·(ε·‖sI − H‖·‖x‖), and gives the largest residual; the pencil is factored at s.
+func (r *FrequencyResponse) lost(s complex128, norm float64) (lost, worst float64) {
+	reach := 0.0
+	for i := range r.p {
+		for k, v := range r.output.RawRowView(i) {
+			r.column[k] = complex(v, 0)
+		}
+		r.pencil.solveAdjoint(r.column)
+		size := 0.0
+		for _, v := range r.column {
+			size = math.Hypot(size, cmplx.Abs(v))
+		}
+		reach = math.Max(reach, size)
+	}
+	for j := range r.m {
+		residual, backward := r.columnResidual(s, j, norm)
+		worst = math.Max(worst, residual)
+		lost = math.Max(lost, reach*backward*math.Max(residual, unitRoundoff))
+	}
+	return lost, worst
+}
+
+// columnResidual solves for column j of the states' response, and returns its relative residual and what that is relative to.
+func (r *FrequencyResponse) columnResidual(s complex128, j int, norm float64) (residual, backward float64) {
 	n := r.n
 	for k := range n {
 		r.column[k] = complex(r.input.At(k, j), 0)
@@ -267,31 +295,20 @@ func (r *FrequencyResponse) columnResidual(s complex128, j int, norm float64) (r
 	r.pencil.solve(r.column)
 	size, left, right := 0.0, 0.0, 0.0
 	for i := range n {
-		sum := s*r.column[i] - complex(r.input.At(i, j), 0)
-		for k := max(i-1, 0); k < n; k++ {
-			h := r.hessenberg[i*n+k]
-			sum -= complex(h*real(r.column[k]), h*imag(r.column[k]))
+		x := r.column[i]
+		re, im := real(s)*real(x)-imag(s)*imag(x)-r.input.At(i, j), real(s)*imag(x)+imag(s)*real(x)
+		from := max(i-1, 0)
+		row := r.hessenberg[i*n+from : (i+1)*n]
+		for k, x := range r.column[from:n] {
+			re -= row[k] * real(x)
+			im -= row[k] * imag(x)
 		}
-		left = math.Hypot(left, cmplx.Abs(sum))
+		left = math.Hypot(left, math.Hypot(re, im))
 		right = math.Hypot(right, r.input.At(i, j))
-		size = math.Hypot(size, cmplx.Abs(r.column[i]))
+		size = math.Hypot(size, cmplx.Abs(x))
 	}
-	backward := norm*size + right
-	if backward == 0 {
+	if backward = norm*size + right; backward == 0 {
 		return 0, 0
 	}
-	residual = left / backward
-	row := make([]complex128, n)
-	for i := range r.p {
-		for k, v := range r.output.RawRowView(i) {
-			row[k] = complex(v, 0)
-		}
-		r.pencil.solveAdjoint(row)
-		reach := 0.0
-		for _, v := range row {
-			reach = math.Hypot(reach, cmplx.Abs(v))
-		}
-		amplified = math.Max(amplified, reach*backward*math.Max(residual, unitRoundoff))
-	}
-	return residual, amplified
+	return left / backward, backward
 }

@@ -12,7 +12,7 @@ import (
 
 // benchmarkSizes are those of the paired runs with SciPy in
 // testdata/structure_timing.py.
-var benchmarkSizes = []int{4, 10, 20, 50, 100, 200}
+var benchmarkSizes = []int{4, 10, 20, 50, 100, 200, 400}
 
 // benchmarkPlant is a random plant with half real, half complex wanted poles.
 func benchmarkPlant(n, m int) (a, b, c *mat.Dense, poles []complex128) {

@@ -19,7 +19,7 @@ def best(call, budget=1.0):
 
 print("SciPy", scipy.__version__, "NumPy", np.__version__, "Python", sys.version.split()[0])
 rng = np.random.default_rng(7)
-for n in (4, 5, 10, 50, 100, 200, 400):
+for n in (4, 5, 10, 20, 50, 100, 200, 400):
     A = rng.standard_normal((n, n)); A *= 10/np.linalg.norm(A, 1)
     B, C, I = rng.standard_normal((n, 2)), rng.standard_normal((2, n)), np.eye(n)
     points = 10.0**(np.arange(500)/100 - 2)
