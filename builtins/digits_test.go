@@ -8,6 +8,7 @@ import (
 	"math/big"
 	"math/rand/v2"
 	"slices"
+	"strings"
 	"testing"
 
 	"gonum.org/v1/gonum/mat"
@@ -376,6 +377,28 @@ func TestFiguresOfUncertainPoles(t *testing.T) {
 		if digits := math.Max(x.Digits(), 0); x.Float64() != real(want.value) || digits != want.digits && !math.IsInf(x.Float64(), 0) {
 			t.Errorf("%s is %v with %v digits, not %v with %v", text, x.Float64(), digits, real(want.value), want.digits)
 		}
+	}
+}
+
+// TestModesOfUncertainPoles: poles whose errors reach the axis from afar are neither one row nor said to swing for ever.
+func TestModesOfUncertainPoles(t *testing.T) {
+	a := "floating([[-7.197668726688194, 248571185.51741502, -979.1632258048669], " +
+		"[-2.4540510654319082e-8, 0.7551910712517124, -3.344369217475545e-6], [-0.004785052590821206, 109555.89055120022, -0.7349969418680281]])"
+	r := bound(t, "X = modes(plant("+a+", identity(3)))", "X").(*value.Report)
+	if count := len(field(r, "poles").(*value.List).Items); count != 3 {
+		t.Errorf("%d poles of 3 states", count)
+	}
+	open := 0
+	for _, row := range r.Rows {
+		if strings.Contains(string(row[0].(value.Text)), "not known") {
+			open++
+		}
+		if strings.Contains(string(row[0].(value.Text)), "for ever") {
+			t.Errorf("the verdict is %q", row[0])
+		}
+	}
+	if open == 0 {
+		t.Error("no verdict is left open")
 	}
 }
 

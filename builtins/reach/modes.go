@@ -151,9 +151,14 @@ func modesOf(p *value.Plant) ([]*mode, error) {
 }
 
 // grouped makes a row of each distinct eigenvalue with imaginary part ≥ 0. Of an exact
-// plant equal means equal; of a floating one, within the error estimates.
+// plant equal means equal; of a floating one, within the error estimates as far as these
+// are small: eigenvalues of which nothing is known are not equal for that.
 func grouped(roots []system.Root, exactly bool) []*mode {
 	var rows []*mode
+	largest := 0.0
+	for _, r := range roots {
+		largest = math.Max(largest, cmplx.Abs(r.Value))
+	}
 	for _, r := range roots {
 		if imag(r.Value) < 0 {
 			continue
@@ -161,11 +166,12 @@ func grouped(roots []system.Root, exactly bool) []*mode {
 		found := false
 		for _, m := range rows {
 			d := cmplx.Abs(m.root.Value - r.Value)
-			near := 4 * (m.root.Err + r.Err)
+			size := math.Max(cmplx.Abs(m.root.Value), cmplx.Abs(r.Value))
+			near := math.Min(4*(m.root.Err+r.Err), math.Max(1e-2*size, 1e-6*largest))
 			if exactly {
 				near = 0
 			}
-			if d <= near {
+			if d <= near && m.pair == (imag(r.Value) > 0) {
 				m.count++
 				found = true
 				break

@@ -39,6 +39,8 @@ func (m *mode) row(p *value.Plant) []value.Value {
 		cells[5] = value.FloatErr(2*math.Pi/math.Abs(imag(v)), rel*2*math.Pi*cmplx.Abs(v)/(imag(v)*imag(v)))
 	}
 	switch {
+	case m.open(sampled):
+		cells[5], cells[6] = nil, nil
 	case m.integrates(sampled), onEdge(z, sampled):
 		cells[6] = value.Int(0)
 	case imag(v) == 0 && real(v) < 0:
@@ -67,6 +69,12 @@ func (m *mode) integrates(sampled bool) bool {
 	return cmplx.Abs(m.root.Value-still) <= m.root.Err && m.root.Err < 1e-6
 }
 
+// open tells whether the error of a mode reaches the axis or the circle from so far that nothing is known of its growth.
+func (m *mode) open(sampled bool) bool {
+	r := m.root
+	return r.Re == nil && !m.integrates(sampled) && onEdge(r, sampled) && r.Err > 1e-6*cmplx.Abs(r.Value)
+}
+
 // onEdge tells whether a mode lies on the axis or the circle within its error.
 func onEdge(r system.Root, sampled bool) bool {
 	if r.Re != nil {
@@ -90,6 +98,8 @@ func (m *mode) verdict(sampled bool) string {
 		how = "gone in a step"
 	case m.integrates(sampled):
 		how = "integrates"
+	case m.open(sampled):
+		how = "grows or decays: not known within its error"
 	case onEdge(m.root, sampled):
 		how = "swings for ever"
 	case Decays(m.root, sampled):
