@@ -112,11 +112,13 @@ def largest_gain(p):
     rough = (lambda w: np.exp(1j * w)) if p["sampled"] else (lambda w: 1j * w)
     poles = np.linalg.eigvals(a)
     own = np.abs(np.angle(poles)) if p["sampled"] else np.abs(poles.imag)
-    scan = np.concatenate([[0.0], own, np.linspace(0, np.pi, 800) if p["sampled"] else np.logspace(-5, 4, 1500)])
+    grid = np.concatenate([np.linspace(0, np.pi, 500), np.logspace(-6, np.log10(np.pi), 800)]) if p["sampled"] else np.logspace(-5, 4, 1500)
+    scan = np.unique(np.concatenate([[0.0], own, grid]))
     gains = [abs((c @ np.linalg.solve(rough(w) * np.eye(len(a)) - a, b.astype(complex)))[0, 0]) for w in scan]
     gain = lambda w: abs(response(p, point(w))[0, 0])
-    best = mp.mpf(float(scan[int(np.argmax(gains))]))
-    top, low, high = gain(best), best * mp.mpf("0.98"), best * mp.mpf("1.02")
+    best = int(np.argmax(gains))
+    low, high = (mp.mpf(float(scan[k])) for k in (max(best - 1, 0), min(best + 1, len(scan) - 1)))
+    top = gain(mp.mpf(float(scan[best])))
     for _ in range(45):
         x, y = low + (high - low) * mp.mpf("0.382"), low + (high - low) * mp.mpf("0.618")
         if gain(x) < gain(y):
